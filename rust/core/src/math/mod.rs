@@ -1,4 +1,7 @@
 //! Mathematics without an astronomical word in it.
 
+pub mod bernstein;
+pub mod chebyshev;
+pub mod roots;
 pub mod spline;
 pub mod vector;

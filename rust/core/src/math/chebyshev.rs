@@ -1,0 +1,544 @@
+//! Chebyshev series: fits, values, derivatives, bounds, and every sign change in an interval.
+//!
+//! `Chebyshev<N>` has `N` coefficients (degree `N − 1`) in place, without allocation, because one is made
+//! per target. A vector-valued series is fitted once; its scalar product with a constant vector is a
+//! scalar series whose roots are all found. Where the degree is known only at run time, the functions on
+//! slices ([`fit`], [`clenshaw`], [`clenshaw_and_rate`]) do the same work.
+//!
+//! Reference: Mason & Handscomb, *Chebyshev Polynomials* (2003): section 2.4.1 for Clenshaw's summation,
+//! section 6.3 for the discrete orthogonality behind the fit [from memory].
+
+use crate::math::bernstein::{self, Crossing, Crossings};
+
+/// Σ c[k] T_k(u) by Clenshaw's summation. `u` in −1 to 1; the empty sum is 0.
+///
+/// Rounding error: below (degree + 3) · 1.2e-16 · Σ|c[k]| in the tests, at most of the order of degree² at the ends.
+#[inline(always)]
+pub fn clenshaw(coefficients: &[f64], u: f64) -> f64 {
+    let (mut b1, mut b2) = (0.0, 0.0);
+    let double = 2.0 * u;
+    for &c in coefficients.iter().skip(1).rev() {
+        (b1, b2) = (double * b1 - b2 + c, b1);
+    }
+    coefficients.first().map_or(0.0, |&c| u * b1 - b2 + c)
+}
+
+/// Σ c[k] T_k(u) and its derivative by `u`, from one pass: the recurrence differentiated term by term.
+#[inline(always)]
+pub fn clenshaw_and_rate(coefficients: &[f64], u: f64) -> (f64, f64) {
+    let (mut b1, mut b2) = (0.0, 0.0);
+    let (mut d1, mut d2) = (0.0, 0.0);
+    let double = 2.0 * u;
+    for &c in coefficients.iter().skip(1).rev() {
+        // The derivative first: it uses the sum before this step.
+        (d1, d2) = (double * d1 - d2 + 2.0 * b1, d1);
+        (b1, b2) = (double * b1 - b2 + c, b1);
+    }
+    match coefficients.first() {
+        Some(&c) => (u * b1 - b2 + c, u * d1 - d2 + b1),
+        None => (0.0, 0.0),
+    }
+}
+
+/// Abscissa in −1 to 1 of node `j` of `n` (zeros of T_n), from the right end to the left.
+pub fn node(j: usize, n: usize) -> f64 {
+    // A sine about the middle keeps the nodes exactly symmetric, and the middle one exactly 0.
+    let numerator = n as f64 - (2 * j + 1) as f64;
+    (std::f64::consts::PI * numerator / (2 * n) as f64).sin()
+}
+
+/// Coefficients from `samples[j]` at [`node`]`(j, n)`, `n` the number of samples and of coefficients.
+///
+/// The interpolating polynomial: its error is at most about twice that of the series cut at the same degree.
+pub fn fit(samples: &[f64], coefficients: &mut [f64]) {
+    let n = samples.len();
+    assert_eq!(n, coefficients.len(), "as many coefficients as samples");
+    // cos(π k (2j + 1) / 2n) is periodic in its numerator with period 4n: a table of sines is exact enough.
+    let cosine: Vec<f64> = (0..4 * n).map(|i| cosine_of_turn(i, 4 * n)).collect();
+    for (k, c) in coefficients.iter_mut().enumerate() {
+        let sum: f64 = samples.iter().enumerate().map(|(j, &y)| y * cosine[k * (2 * j + 1) % (4 * n)]).sum();
+        *c = sum * if k == 0 { 1.0 } else { 2.0 } / n as f64;
+    }
+}
+
+/// cos(2π i / n).
+fn cosine_of_turn(i: usize, n: usize) -> f64 {
+    (2.0 * std::f64::consts::PI * i as f64 / n as f64).cos()
+}
+
+/// A scalar Chebyshev series of `N` coefficients on an interval.
+#[derive(Debug, Clone, Copy, PartialEq)]
+pub struct Chebyshev<const N: usize> {
+    interval: Interval,
+    coefficients: [f64; N],
+}
+
+/// A Chebyshev series of `K` components on an interval, `N` coefficients each.
+#[derive(Debug, Clone, Copy, PartialEq)]
+pub struct ChebyshevVector<const N: usize, const K: usize> {
+    interval: Interval,
+    coefficients: [[f64; N]; K],
+}
+
+#[derive(Debug, Clone, Copy, PartialEq)]
+struct Interval {
+    start: f64,
+    stop: f64,
+}
+
+impl Interval {
+    fn new(start: f64, stop: f64) -> Self {
+        Interval { start, stop }
+    }
+
+    #[inline(always)]
+    fn half(self) -> f64 {
+        0.5 * (self.stop - self.start)
+    }
+
+    /// −1 and 1 exactly at the ends.
+    #[inline(always)]
+    fn unit(self, x: f64) -> f64 {
+        ((x - self.start) - (self.stop - x)) / (self.stop - self.start)
+    }
+
+    /// The ends exactly at −1 and 1.
+    #[inline(always)]
+    fn abscissa(self, u: f64) -> f64 {
+        0.5 * (self.start * (1.0 - u) + self.stop * (1.0 + u))
+    }
+}
+
+impl<const N: usize> Chebyshev<N> {
+    /// The series with these coefficients on `start` to `stop`, which the caller keeps in that order and apart.
+    #[inline(always)]
+    pub fn new(start: f64, stop: f64, coefficients: [f64; N]) -> Self {
+        Chebyshev { interval: Interval::new(start, stop), coefficients }
+    }
+
+    /// The interpolating series of `f`, sampled at `N` Chebyshev nodes of `start` to `stop`.
+    pub fn fit(start: f64, stop: f64, mut f: impl FnMut(f64) -> f64) -> Self {
+        ChebyshevVector::<N, 1>::fit(start, stop, |x| [f(x)]).component(0)
+    }
+
+    /// First and last abscissa.
+    pub fn interval(&self) -> (f64, f64) {
+        (self.interval.start, self.interval.stop)
+    }
+
+    /// The coefficients, of T_0 upwards.
+    pub fn coefficients(&self) -> &[f64; N] {
+        &self.coefficients
+    }
+
+    /// Value at `x`, which the caller keeps within the interval.
+    #[inline(always)]
+    pub fn value(&self, x: f64) -> f64 {
+        clenshaw(&self.coefficients, self.interval.unit(x))
+    }
+
+    /// Value and derivative by `x` at `x`, which the caller keeps within the interval.
+    #[inline(always)]
+    pub fn value_and_rate(&self, x: f64) -> (f64, f64) {
+        let (value, rate) = clenshaw_and_rate(&self.coefficients, self.interval.unit(x));
+        (value, rate / self.interval.half())
+    }
+
+    /// The derivative as a series (its last coefficient is 0): its crossings are the extrema.
+    pub fn derivative(&self) -> Self {
+        let mut derived = [0.0; N];
+        // c′[k−1] = c′[k+1] + 2 k c[k], from the top, the first halved.
+        for k in (1..N).rev() {
+            derived[k - 1] =
+                2.0 * k as f64 * self.coefficients[k] + if k + 1 < N { derived[k + 1] } else { 0.0 };
+        }
+        derived[0] *= 0.5;
+        let scale = 1.0 / self.interval.half();
+        Chebyshev { interval: self.interval, coefficients: derived.map(|c| c * scale) }
+    }
+
+    /// Estimate of what the fit leaves out: the sum of the sizes of the last two coefficients (two, because
+    /// every other one of an even or odd function is 0).
+    ///
+    /// An upper bound of the error for a function whose coefficients fall by a factor of two or more a degree;
+    /// where they do not fall, no estimate helps: take a higher degree. Proved by `the_tail_covers_the_error`.
+    pub fn tail(&self) -> f64 {
+        self.coefficients.iter().rev().take(2).map(|c| c.abs()).sum()
+    }
+
+    /// The series plus a constant.
+    #[inline(always)]
+    pub fn plus(mut self, constant: f64) -> Self {
+        self.coefficients[0] += constant;
+        self
+    }
+
+    /// `a · self + b · other`, both on the same interval.
+    #[inline(always)]
+    pub fn combine(&self, a: f64, other: &Self, b: f64) -> Self {
+        debug_assert_eq!(self.interval, other.interval, "series on one interval");
+        let coefficients = std::array::from_fn(|k| a * self.coefficients[k] + b * other.coefficients[k]);
+        Chebyshev { interval: self.interval, coefficients }
+    }
+
+    /// Lower and upper bound on the interval, c[0] ∓ Σ|c[k]|: the cheapest that is safe.
+    #[inline(always)]
+    pub fn loose_bounds(&self) -> (f64, f64) {
+        let spread: f64 = self.coefficients.iter().skip(1).map(|c| c.abs()).sum();
+        (self.coefficients[0] - spread, self.coefficients[0] + spread)
+    }
+
+    /// Lower and upper bound on the interval, from the hull of the Bernstein coefficients where that is tighter.
+    ///
+    /// Safe up to rounding, 1e-16 of the largest Bernstein coefficient.
+    pub fn bounds(&self) -> (f64, f64) {
+        let (low, high) = self.loose_bounds();
+        let hull = self.bernstein();
+        (
+            low.max(hull.iter().copied().fold(f64::INFINITY, f64::min)),
+            high.min(hull.iter().copied().fold(f64::NEG_INFINITY, f64::max)),
+        )
+    }
+
+    /// Coefficients in the Bernstein basis of degree `N − 1` on the interval, from its start to its stop.
+    pub fn bernstein(&self) -> [f64; N] {
+        bernstein::from_chebyshev(&self.coefficients)
+    }
+
+    /// Every sign change in [start, stop), in ascending order, each with its direction.
+    ///
+    /// * Half-open: a change exactly at `start` is reported, one exactly at `stop` is not.
+    /// * A zero where the sign stays (a tangent, any even order) is not reported. Two crossings nearer than
+    ///   about 1e-8 of the interval merge with rounding into such a tangent, and may be reported or not, but
+    ///   always both or neither: directions alternate.
+    /// * Abscissae are good to the rounding of the value divided by the slope; see [`bernstein::crossings`].
+    pub fn crossings(&self) -> Crossings<N> {
+        let mut found = bernstein::crossings(&self.bernstein(), |u| clenshaw_and_rate(&self.coefficients, u));
+        for crossing in found.iter_mut() {
+            let x = self.interval.abscissa(crossing.at);
+            // The last step of rounding must not carry a crossing before the stop onto it.
+            crossing.at = x.clamp(self.interval.start, self.interval.stop.next_down());
+        }
+        found
+    }
+
+    /// The first sign change in [start, stop), as [`Chebyshev::crossings`] defines it.
+    pub fn first_crossing(&self) -> Option<Crossing> {
+        self.crossings().first().copied()
+    }
+}
+
+impl<const N: usize, const K: usize> ChebyshevVector<N, K> {
+    /// The series with these coefficients, `[component][degree]`, on `start` to `stop`.
+    pub fn new(start: f64, stop: f64, coefficients: [[f64; N]; K]) -> Self {
+        ChebyshevVector { interval: Interval::new(start, stop), coefficients }
+    }
+
+    /// The interpolating series of `f`, sampled at `N` Chebyshev nodes of `start` to `stop`, from the last to the first.
+    pub fn fit(start: f64, stop: f64, mut f: impl FnMut(f64) -> [f64; K]) -> Self {
+        let interval = Interval::new(start, stop);
+        let mut samples = [[0.0; N]; K];
+        for j in 0..N {
+            let sample = f(interval.abscissa(node(j, N)));
+            for k in 0..K {
+                samples[k][j] = sample[k];
+            }
+        }
+        let mut coefficients = [[0.0; N]; K];
+        for (samples, coefficients) in samples.iter().zip(&mut coefficients) {
+            fit(samples, coefficients);
+        }
+        ChebyshevVector { interval, coefficients }
+    }
+
+    /// First and last abscissa.
+    pub fn interval(&self) -> (f64, f64) {
+        (self.interval.start, self.interval.stop)
+    }
+
+    /// One component as a scalar series.
+    pub fn component(&self, k: usize) -> Chebyshev<N> {
+        Chebyshev { interval: self.interval, coefficients: self.coefficients[k] }
+    }
+
+    /// Value at `x`, which the caller keeps within the interval.
+    #[inline(always)]
+    pub fn value(&self, x: f64) -> [f64; K] {
+        let u = self.interval.unit(x);
+        std::array::from_fn(|k| clenshaw(&self.coefficients[k], u))
+    }
+
+    /// Value and derivative by `x` at `x`, which the caller keeps within the interval.
+    #[inline(always)]
+    pub fn value_and_rate(&self, x: f64) -> ([f64; K], [f64; K]) {
+        let u = self.interval.unit(x);
+        let (mut value, mut rate) = ([0.0; K], [0.0; K]);
+        for k in 0..K {
+            let (v, r) = clenshaw_and_rate(&self.coefficients[k], u);
+            (value[k], rate[k]) = (v, r / self.interval.half());
+        }
+        (value, rate)
+    }
+
+    /// Estimate of what the fit leaves out, a component: see [`Chebyshev::tail`].
+    pub fn tail(&self) -> [f64; K] {
+        std::array::from_fn(|k| self.component(k).tail())
+    }
+
+    /// The scalar product with a constant vector, as a scalar series.
+    #[inline(always)]
+    pub fn dot(&self, vector: [f64; K]) -> Chebyshev<N> {
+        let mut coefficients = [0.0; N];
+        for k in 0..K {
+            for i in 0..N {
+                coefficients[i] += self.coefficients[k][i] * vector[k];
+            }
+        }
+        Chebyshev { interval: self.interval, coefficients }
+    }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    /// A linear congruential generator (Knuth's MMIX constants), uniform in 0 to 1.
+    struct Random(u64);
+
+    impl Random {
+        fn next(&mut self) -> f64 {
+            self.0 = self.0.wrapping_mul(6364136223846793005).wrapping_add(1442695040888963407);
+            (self.0 >> 11) as f64 / (1u64 << 53) as f64
+        }
+
+        fn within(&mut self, low: f64, high: f64) -> f64 {
+            low + (high - low) * self.next()
+        }
+    }
+
+    /// The series with these roots in u, times `scale`: multiplied up factor by factor,
+    /// (u − r) Σ c_k T_k with u T_k = (T_(k+1) + T_|k−1|) / 2.
+    fn with_roots<const N: usize>(roots: &[f64], scale: f64) -> Chebyshev<N> {
+        let mut c = [0.0; N];
+        c[0] = scale;
+        for (degree, &r) in roots.iter().enumerate() {
+            let mut product = [0.0; N];
+            for k in 0..=degree {
+                product[k + 1] += 0.5 * c[k];
+                product[k.abs_diff(1)] += 0.5 * c[k];
+                product[k] -= r * c[k];
+            }
+            c = product;
+        }
+        Chebyshev::new(-1.0, 1.0, c)
+    }
+
+    #[test]
+    fn fits_reach_rounding_and_rates_follow() {
+        // Against the function itself and its analytic derivative.
+        let series = Chebyshev::<24>::fit(2.0, 5.0, |x| (1.3 * x).sin() + 0.1 * x * x);
+        for i in 0..=1000 {
+            let x = 2.0 + 3.0 * f64::from(i) / 1000.0;
+            let (value, rate) = series.value_and_rate(x);
+            assert_eq!(value, series.value(x));
+            assert!((value - ((1.3 * x).sin() + 0.1 * x * x)).abs() < 4e-15);
+            assert!((rate - (1.3 * (1.3 * x).cos() + 0.2 * x)).abs() < 1e-13, "{:e}", rate);
+            assert!((series.derivative().value(x) - rate).abs() < 1e-13);
+        }
+    }
+
+    #[test]
+    fn the_tail_covers_the_error() {
+        for (rate, shift) in [(0.7, 0.0), (1.0, 0.3), (2.0, 1.0), (3.0, 2.0)] {
+            let f = |x: f64| (rate * x + shift).cos();
+            let series = Chebyshev::<10>::fit(-1.0, 1.0, f);
+            let worst = (0..=2000)
+                .map(|i| f64::from(i) / 1000.0 - 1.0)
+                .fold(0.0_f64, |w, x| w.max((series.value(x) - f(x)).abs()));
+            assert!(
+                worst < series.tail() + 1e-15 && worst > 1e-3 * series.tail(),
+                "{worst:e} against {:e}",
+                series.tail()
+            );
+        }
+    }
+
+    #[test]
+    fn products_and_combinations_are_those_of_the_values() {
+        let vector = ChebyshevVector::<16, 3>::fit(0.0, 2.0, |x| [x.sin(), x.cos(), (0.5 * x).exp()]);
+        let constant = [0.3, -0.8, 1.7];
+        let scalar = vector.dot(constant).plus(-0.25);
+        let mixed = scalar.combine(2.0, &vector.component(1), -3.0);
+        for i in 0..=100 {
+            let x = f64::from(i) / 50.0;
+            let (v, r) = vector.value_and_rate(x);
+            let expected = 0.3 * x.sin() - 0.8 * x.cos() + 1.7 * (0.5 * x).exp() - 0.25;
+            assert!((scalar.value(x) - expected).abs() < 1e-14);
+            assert!((mixed.value(x) - (2.0 * expected - 3.0 * x.cos())).abs() < 2e-14);
+            assert!((v[0] - x.sin()).abs() < 2e-15 && (r[0] - x.cos()).abs() < 1e-13);
+        }
+        assert!(vector.tail().iter().all(|t| *t < 1e-13));
+    }
+
+    #[test]
+    fn bounds_hold_and_the_hull_is_tighter() {
+        let mut random = Random(11);
+        let mut tighter = 0;
+        for _ in 0..500 {
+            let c: [f64; 12] = std::array::from_fn(|k| random.within(-1.0, 1.0) * 0.4_f64.powi(k as i32));
+            let series = Chebyshev::new(-3.0, 7.0, c);
+            let (loose, tight) = (series.loose_bounds(), series.bounds());
+            tighter += usize::from(tight.1 - tight.0 < 0.95 * (loose.1 - loose.0));
+            for i in 0..=400 {
+                let value = series.value(-3.0 + f64::from(i) / 40.0);
+                assert!(value >= tight.0 - 1e-15 && value <= tight.1 + 1e-15);
+                assert!(loose.0 <= tight.0 && tight.1 <= loose.1);
+            }
+        }
+        assert!(tighter > 250, "{tighter} of 500");
+    }
+
+    #[test]
+    fn every_root_of_random_polynomials_is_found() {
+        let mut random = Random(1);
+        for trial in 0..3000 {
+            // Up to 11 roots inside and outside of the interval.
+            let mut roots: Vec<f64> = (0..trial % 12).map(|_| random.within(-1.5, 1.5)).collect();
+            roots.sort_by(f64::total_cmp);
+            if roots.windows(2).any(|p| p[1] - p[0] < 1e-3)
+                || roots.iter().any(|r| (r.abs() - 1.0).abs() < 1e-6)
+            {
+                continue;
+            }
+            let scale = if trial % 2 == 0 { 1.0 } else { -1.0 };
+            let found = with_roots::<14>(&roots, scale).crossings();
+            let inside: Vec<f64> = roots.iter().copied().filter(|r| r.abs() < 1.0).collect();
+            assert_eq!(found.len(), inside.len(), "trial {trial}: {roots:?}");
+            for (crossing, root) in found.iter().zip(&inside) {
+                let above = roots.iter().filter(|r| *r > root).count();
+                assert_eq!(crossing.rising, (above % 2 == 0) == (scale > 0.0));
+                assert!((crossing.at - root).abs() < 1e-6);
+            }
+        }
+    }
+
+    #[test]
+    fn roots_of_exactly_known_polynomials_are_exact_to_rounding() {
+        // Up to eight roots in 32nds: the coefficients are exact in 53 bits, so that all error is the solver's.
+        let mut random = Random(4);
+        let (mut worst, mut at_start, mut at_stop) = (0.0_f64, 0, 0);
+        for trial in 0..5000 {
+            let mut roots: Vec<f64> =
+                (0..trial % 9).map(|_| random.within(-40.0, 40.0).round() / 32.0).collect();
+            roots.sort_by(f64::total_cmp);
+            roots.dedup();
+            let series = with_roots::<9>(&roots, 1.0);
+            let inside: Vec<f64> = roots.iter().copied().filter(|r| (-1.0..1.0).contains(r)).collect();
+            at_start += usize::from(inside.first() == Some(&-1.0));
+            at_stop += usize::from(roots.contains(&1.0));
+            let found = series.crossings();
+            assert_eq!(found.len(), inside.len(), "trial {trial}: {roots:?} {:?}", &*found);
+            let size = series.coefficients().iter().map(|c| c.abs()).sum::<f64>();
+            for (crossing, root) in found.iter().zip(&inside) {
+                let slope = series.value_and_rate(*root).1.abs();
+                worst = worst.max((crossing.at - root).abs() / (f64::EPSILON * (1.0 + size / slope)));
+            }
+        }
+        assert!(at_start > 100 && at_stop > 100);
+        assert!(worst < 4.0, "{worst} roundings");
+    }
+
+    #[test]
+    fn close_pairs_are_told_apart() {
+        let mut random = Random(2);
+        let mut checked = 0;
+        for trial in 0..2000 {
+            // A pair at 1e-3 down to 1e-6 of the interval apart, among other roots.
+            let gap = 2.0 * 10f64.powf(-3.0 - f64::from(trial % 4));
+            let at = random.within(-0.99, 0.99);
+            let mut roots = vec![at - 0.5 * gap, at + 0.5 * gap];
+            for _ in 0..trial % 5 {
+                roots.push(random.within(-1.3, 1.3));
+            }
+            if roots[2..].iter().any(|r| (r - at).abs() < 0.05 || (r.abs() - 1.0).abs() < 1e-3) {
+                continue;
+            }
+            let series = with_roots::<12>(&roots, 1.0);
+            // How far the polynomial passes zero between the two, against what is promised to be seen.
+            let depth = series.value(at).abs();
+            let size = series.bernstein().iter().fold(0.0_f64, |m, b| m.max(b.abs()));
+            if depth < 2e-15 * size {
+                assert!(gap < 1.9e-5, "a pair at 1e-5 of the interval stands clear of rounding");
+                continue;
+            }
+            let found = series.crossings();
+            assert_eq!(found.len(), roots.iter().filter(|r| r.abs() < 1.0).count(), "gap {gap:e}: {roots:?}");
+            for root in &roots[..2] {
+                let nearest = found.iter().map(|c| (c.at - root).abs()).fold(9.0, f64::min);
+                // The slope at either is 4 depth / gap; the test's own coefficients are rounded too.
+                assert!(nearest < 1e-15 * size * gap / depth, "gap {gap:e}: {nearest:e}");
+            }
+            checked += 1;
+        }
+        assert!(checked > 1000);
+    }
+
+    #[test]
+    fn one_second_out_of_a_day() {
+        // A smooth bump that stands above its threshold for one second of 86,400.
+        let half = 0.5_f64 / 86400.0;
+        let bump = |t: f64| (6.0 * (t - 0.37)).cos() - (6.0 * half).cos();
+        let series = Chebyshev::<20>::fit(0.0, 1.0, bump);
+        let found = series.crossings();
+        // cos crosses upwards and downwards at 0.37 ∓ half, and never else within the day (the next is at 1.417).
+        assert_eq!(found.len(), 2);
+        assert!(found[0].rising && !found[1].rising);
+        // A rounding of the fit of 2e-15 over the slope there: 1e-11 of a day is a microsecond.
+        let rounding = 2e-15 / (36.0 * half);
+        eprintln!("{:e} {:e} {rounding:e}", found[0].at - (0.37 - half), found[1].at - (0.37 + half));
+        assert!(
+            (found[0].at - (0.37 - half)).abs() < rounding && (found[1].at - (0.37 + half)).abs() < rounding
+        );
+    }
+
+    #[test]
+    fn ends_are_half_open() {
+        let crossings = |c: [f64; 4]| Chebyshev::new(10.0, 20.0, c).crossings().to_vec();
+        // u + 1 crosses at the start, u − 1 at the stop, (u + 1)² = 3/2 + 2u + T₂/2 touches the start.
+        assert_eq!(crossings([1.0, 1.0, 0.0, 0.0]), [Crossing { at: 10.0, rising: true }]);
+        assert_eq!(crossings([-1.0, -1.0, 0.0, 0.0]), [Crossing { at: 10.0, rising: false }]);
+        assert_eq!(crossings([-1.0, 1.0, 0.0, 0.0]), []);
+        assert_eq!(crossings([1.5, 2.0, 0.5, 0.0]), []);
+        // (u + 1)³ = 5/2 + 15/4 u + 3/2 T₂ + 1/4 T₃ crosses the start; (u − 1)(u + 1) = T₂/2 − 1/2 falls through it.
+        assert_eq!(crossings([2.5, 3.75, 1.5, 0.25]), [Crossing { at: 10.0, rising: true }]);
+        assert_eq!(crossings([-0.5, 0.0, 0.5, 0.0]), [Crossing { at: 10.0, rising: false }]);
+        // A root at the middle, where the first division falls, is found once.
+        assert_eq!(crossings([0.0, 1.0, 0.0, 0.0]), [Crossing { at: 15.0, rising: true }]);
+        // u² = (1 + T₂) / 2 touches there and u³ = (3u + T₃) / 4 crosses.
+        assert_eq!(crossings([0.5, 0.0, 0.5, 0.0]), []);
+        let cube = crossings([0.0, 0.75, 0.0, 0.25]);
+        assert!(cube.len() == 1 && cube[0].rising && (cube[0].at - 15.0).abs() < 1e-4);
+        // Spans that are joined lose and double nothing.
+        let line = |a, b| Chebyshev::<2>::fit(a, b, |x| x - 3.0).crossings().len();
+        assert_eq!(line(2.0, 3.0) + line(3.0, 4.0), 1);
+    }
+
+    #[test]
+    fn tangents_and_nothing() {
+        let mut random = Random(3);
+        for _ in 0..300 {
+            // A double root, in a place where rounding leaves it a double root, a pair or none.
+            let at = random.within(-0.9, 0.9);
+            let found = with_roots::<8>(&[at, at, 1.4], 1.0).crossings();
+            assert!(found.len().is_multiple_of(2) && found.iter().all(|c| (c.at - at).abs() < 1e-7));
+            // A triple one: one crossing, or three within rounding; always alternating.
+            let found = with_roots::<8>(&[at, at, at], 1.0).crossings();
+            assert!(!found.len().is_multiple_of(2) && found.iter().all(|c| (c.at - at).abs() < 1e-4));
+            assert!(found.iter().enumerate().all(|(i, c)| c.rising == (i % 2 == 0)));
+        }
+        assert!(Chebyshev::new(0.0, 1.0, [0.0; 9]).crossings().is_empty());
+        assert!(Chebyshev::new(0.0, 1.0, [f64::NAN; 9]).crossings().is_empty());
+        assert!(Chebyshev::new(0.0, 1.0, [2.0]).crossings().is_empty());
+        assert_eq!(Chebyshev::new(0.0, 1.0, [0.0, 1.0]).first_crossing().unwrap().at, 0.5);
+    }
+}
