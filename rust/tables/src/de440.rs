@@ -49,7 +49,7 @@ const PLANS: [Plan; Body::ALL.len()] = [
 ];
 
 /// Points a piece between those of the fit at which the result is compared with its source.
-const CHECKS: usize = 11;
+const CHECKS: usize = 151;
 
 /// Writes the table, or with `check` compares it with the committed one.
 pub fn run(check: bool, source: &Path) -> Result<(), String> {
@@ -98,7 +98,7 @@ fn make(kernel: &Spk, sha256: &[u8]) -> Result<Vec<u8>, String> {
     );
     for (plan, error) in PLANS.iter().zip(&mut errors) {
         let measured = measure(kernel, &compact, plan)?;
-        *error = (measured.position_m, measured.velocity_m_s);
+        *error = (rounded_up(measured.position_m), rounded_up(measured.velocity_m_s));
         let fitted = &fitted[plan.body as usize];
         println!(
             "{:10} {:4} {:6} {:10} {:9} {:8.3} {:12.3e} {:11.5} {:10.5} {:7.3}",
@@ -202,15 +202,7 @@ struct Fitter {
 impl Fitter {
     fn new(degree: usize) -> Fitter {
         let (terms, count) = (degree + 1, 3 * degree);
-        // Even steps of u through x = (3u − u³)/2 crowd towards the ends as the zeros of Chebyshev
-        // polynomials do, which keeps the fit near the smallest largest error; and no cosine is needed,
-        // whose last bit may differ from one machine to the next.
-        let points: Vec<f64> = (0..count)
-            .map(|index| {
-                let u = 2.0 * index as f64 / (count - 1) as f64 - 1.0;
-                (3.0 * u - u * u * u) / 2.0
-            })
-            .collect();
+        let points: Vec<f64> = (0..count).map(|index| crowded(index as f64 / (count - 1) as f64)).collect();
         // A velocity weighs as the position it would make over 1/degree of half the piece.
         let weight = 1.0 / (degree * degree) as f64;
         let basis: Vec<(Vec<f64>, Vec<f64>)> = points.iter().map(|&x| polynomials(x, terms)).collect();
@@ -279,6 +271,14 @@ impl Fitter {
     }
 }
 
+/// From 0 to 1 to −1 to 1, crowding towards both ends as the zeros of Chebyshev polynomials do, which
+/// keeps the fit near the smallest largest error. A cubic rather than a cosine, whose last bit may
+/// differ from one machine to the next.
+fn crowded(fraction: f64) -> f64 {
+    let u = 2.0 * fraction - 1.0;
+    (3.0 * u - u * u * u) / 2.0
+}
+
 /// Tₖ(x) and T′ₖ(x) for k below `terms`, by their recurrences.
 fn polynomials(x: f64, terms: usize) -> (Vec<f64>, Vec<f64>) {
     let (mut values, mut slopes) = (vec![1.0, x], vec![0.0, 1.0]);
@@ -328,6 +328,19 @@ struct Measured {
     join_m: f64,
 }
 
+/// The next number with two significant digits: what is stated is not exceeded between the points of
+/// [`measure`] either.
+fn rounded_up(value: f64) -> f64 {
+    let mut digits = 0;
+    let mut power = 1.0;
+    while value * power < 10.0 {
+        power *= 10.0;
+        digits += 1;
+    }
+    assert!(digits > 0, "errors are below 10 m and 10 m/s");
+    (value * power).ceil() / power
+}
+
 fn measure(kernel: &Spk, compact: &Compact, plan: &Plan) -> Result<Measured, String> {
     const MAS_PER_RADIAN: f64 = 648_000e3 / std::f64::consts::PI;
     let mut most = Measured { nearest_au: f64::INFINITY, ..Measured::default() };
@@ -342,7 +355,8 @@ fn measure(kernel: &Spk, compact: &Compact, plan: &Plan) -> Result<Measured, Str
     let observer = if plan.body == Body::Earth { 10 } else { 399 };
     for day in (FIRST_MJD..LAST_MJD).step_by(plan.piece_days as usize) {
         for check in 0..CHECKS {
-            let into = f64::from(plan.piece_days) * (check as f64 + 0.5) / CHECKS as f64;
+            let into =
+                f64::from(plan.piece_days) / 2.0 * (1.0 + crowded((check as f64 + 0.5) / CHECKS as f64));
             let (found, wanted) = (ours(day, into)?, metres(kernel, plan, day, into)?);
             let position_m = norm(sub(scale(ASTRONOMICAL_UNIT_M, found.position), wanted.position));
             let velocity = norm(sub(scale(ASTRONOMICAL_UNIT_M, found.velocity), wanted.velocity));

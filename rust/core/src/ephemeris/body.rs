@@ -6,9 +6,9 @@ use crate::error::{Error, Result};
 ///
 /// For Mars to Pluto "the body" means the barycentre of the planet with its satellites, as the DE
 /// series of ephemerides give it, unless a kernel brings the planet itself (see
-/// [`Spk::code`](super::Spk::code)). Seen from Earth the planet stands off its barycentre by at most
-/// about 0.07″ (Jupiter), 0.05″ (Saturn), 0.01″ (Uranus, Neptune), 0.1″ (Pluto, by Charon) and nothing
-/// to speak of for Mars (0.2 m).
+/// [`Spk::code`](super::Spk::code)). Seen from the Earth the planet stands off its barycentre by at most
+/// 0.08″ (Jupiter), 0.05″ (Saturn), 0.004″ (Uranus, Neptune), 0.1″ (Pluto, by Charon), and nothing to
+/// speak of for Mars (0.2 m): the sums of satellite mass ratio times orbit, at the nearest approach.
 #[derive(Debug, Clone, Copy, PartialEq, Eq, Hash, PartialOrd, Ord)]
 #[repr(u8)]
 pub enum Body {

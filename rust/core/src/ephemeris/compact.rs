@@ -24,6 +24,7 @@ use super::{Body, State, chebyshev};
 use crate::constants::ASTRONOMICAL_UNIT_M;
 use crate::error::{Error, Result, Status};
 use crate::math::vector::{Vector, add, scale};
+use crate::time::{Instant, Tdb};
 
 /// The layout of the file, for its reader here and its writer in `hourarc-tables`. Little-endian.
 ///
@@ -166,6 +167,16 @@ impl Compact {
         (self.first_mjd, self.last_mjd)
     }
 
+    /// First instant covered.
+    pub fn first(&self) -> Instant<Tdb> {
+        Instant::from_mjd(self.first_mjd, 0.0)
+    }
+
+    /// Last instant covered.
+    pub fn last(&self) -> Instant<Tdb> {
+        Instant::from_mjd(self.last_mjd, 0.0)
+    }
+
     /// What this is, in words, with the hash of what it was made from.
     pub fn provenance(&self) -> String {
         let hash: String = self.source_sha256[..8].iter().map(|byte| format!("{byte:02x}")).collect();
@@ -176,6 +187,20 @@ impl Compact {
     /// barycentric one is that plus the Earth's).
     pub fn error(&self, body: Body) -> FitError {
         self.series[body as usize].error
+    }
+
+    /// [`Compact::state_at`] at a typed instant.
+    #[inline]
+    pub fn state(&self, body: Body, tdb: Instant<Tdb>) -> std::result::Result<State, Status> {
+        let (day, fraction) = tdb.mjd_parts();
+        self.state_at(body, day, fraction)
+    }
+
+    /// [`Compact::position_at`] at a typed instant.
+    #[inline]
+    pub fn position(&self, body: Body, tdb: Instant<Tdb>) -> std::result::Result<Vector, Status> {
+        let (day, fraction) = tdb.mjd_parts();
+        self.position_at(body, day, fraction)
     }
 
     /// Barycentric state, au and au/day, ICRS, at the TDB instant `day + fraction` (Modified Julian
@@ -213,7 +238,8 @@ impl Compact {
     fn stored_state(&self, body: Body, day: f64, fraction: f64) -> std::result::Result<State, Status> {
         let series = &self.series[body as usize];
         let (piece, x) = self.locate(series, day, fraction)?;
-        let (value, slope) = chebyshev::value_and_slope(series.count, x, |k| series.coefficient(piece, k));
+        let (value, slope) =
+            chebyshev::value_and_slope(x, series.higher(piece), series.coefficient(piece, 0));
         Ok(State {
             position: scale(series.quantum_au, value),
             velocity: scale(series.quantum_au * 2.0 / series.piece_days, slope),
@@ -224,7 +250,7 @@ impl Compact {
     fn stored_position(&self, body: Body, day: f64, fraction: f64) -> std::result::Result<Vector, Status> {
         let series = &self.series[body as usize];
         let (piece, x) = self.locate(series, day, fraction)?;
-        Ok(scale(series.quantum_au, chebyshev::value(series.count, x, |k| series.coefficient(piece, k))))
+        Ok(scale(series.quantum_au, chebyshev::value(x, series.higher(piece), series.coefficient(piece, 0))))
     }
 
     /// The piece an instant falls in (its bytes and all after them) and where in it, −1 to 1.
@@ -280,6 +306,12 @@ impl Series {
         })
     }
 
+    /// The coefficients above the constant term, the highest first.
+    #[inline(always)]
+    fn higher(&self, piece: &[u8]) -> impl Iterator<Item = Vector> {
+        (1..self.count).rev().map(|order| self.coefficient(piece, order))
+    }
+
     /// Reads eight bytes from where a coefficient starts and shifts out those of its neighbours; the
     /// hash at the end of the table keeps the last read inside it.
     #[inline(always)]
@@ -297,4 +329,165 @@ impl Series {
 #[inline(always)]
 fn take<const N: usize>(bytes: &[u8], at: usize) -> [u8; N] {
     bytes[at..at + N].try_into().expect("a slice of the very length")
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+    use crate::constants::{RADIANS_PER_MILLIARCSECOND, SECONDS_PER_DAY};
+    use crate::math::vector::{angle, norm, sub};
+
+    static REFERENCE: &str = include_str!("../../../../tests/reference/ephemeris_de440.csv");
+
+    /// The last column of the table in the documentation of `ephemeris`, in the order of the bodies; none
+    /// for the Earth.
+    const DIRECTION_MAS: [f64; Body::ALL.len()] =
+        [0.0006, 0.018, 0.006, 0.004, 0.0, 0.003, 0.0012, 0.0006, 0.0003, 0.0002, 0.0002];
+
+    /// All rows of the reference: body, day, fraction, state.
+    fn reference() -> Vec<(Body, f64, f64, State)> {
+        let rows = REFERENCE.lines().skip(2).map(|line| {
+            let (body, rest) = line.split_once(',').unwrap();
+            let n: Vec<f64> = rest.split(',').map(|cell| cell.parse().unwrap()).collect();
+            let state = State { position: [n[2], n[3], n[4]], velocity: [n[5], n[6], n[7]] };
+            (Body::from_word(body).unwrap(), n[0], n[1], state)
+        });
+        let rows: Vec<_> = rows.collect();
+        assert!(rows.len() > 3000);
+        rows
+    }
+
+    /// The committed bytes are those the generator wrote, and of the size agreed.
+    #[test]
+    fn the_table_is_whole() {
+        let compact = Compact::builtin();
+        compact.verify().unwrap();
+        assert_eq!(layout::hash(&BYTES[..BYTES.len() - HASH_BYTES]), 0xfef2c238bb12859f);
+        assert!(BYTES.len() < 8_000_000);
+        assert_eq!(compact.span_mjd(), (14_848.0, 88_576.0));
+        assert_eq!(compact.provenance(), "DE440 (compact, from sha256 a4ce9bf9b3282bec…)");
+    }
+
+    /// Against DE440 as jplephem reads it (tests/reference/make_ephemeris.py): within the stated errors.
+    #[test]
+    fn states_agree_with_de440() {
+        let compact = Compact::builtin();
+        for (body, day, fraction, wanted) in reference() {
+            let found = compact.state_at(body, day, fraction).unwrap();
+            let mut allowed = compact.error(body);
+            if body == Body::Moon {
+                allowed.position_m += compact.error(Body::Earth).position_m;
+                allowed.velocity_m_s += compact.error(Body::Earth).velocity_m_s;
+            }
+            let position_m = norm(sub(found.position, wanted.position)) * ASTRONOMICAL_UNIT_M;
+            let velocity_m_s =
+                norm(sub(found.velocity, wanted.velocity)) * ASTRONOMICAL_UNIT_M / SECONDS_PER_DAY;
+            assert!(position_m <= allowed.position_m, "{body:?} {day} {fraction}: {position_m} m");
+            assert!(velocity_m_s <= allowed.velocity_m_s, "{body:?} {day} {fraction}: {velocity_m_s} m/s");
+            assert_eq!(compact.position_at(body, day, fraction), Ok(found.position));
+        }
+    }
+
+    /// The directions from the Earth's centre agree with DE440's within the figures of the module's table.
+    #[test]
+    fn geocentric_directions_agree_with_de440() {
+        let compact = Compact::builtin();
+        let rows = reference();
+        let count = rows.len() / Body::ALL.len();
+        let earths = &rows[count * Body::Earth as usize..][..count];
+        let mut worst = [0.0_f64; Body::ALL.len()];
+        for (index, (body, day, fraction, wanted)) in rows.iter().enumerate() {
+            if *body == Body::Earth {
+                continue;
+            }
+            let (_, earth_day, earth_fraction, earth) = earths[index % count];
+            assert_eq!((earth_day, earth_fraction), (*day, *fraction));
+            let seen = sub(
+                compact.position_at(*body, *day, *fraction).unwrap(),
+                compact.position_at(Body::Earth, *day, *fraction).unwrap(),
+            );
+            let mas = angle(seen, sub(wanted.position, earth.position)) / RADIANS_PER_MILLIARCSECOND;
+            worst[*body as usize] = worst[*body as usize].max(mas);
+        }
+        for (body, worst) in Body::ALL.into_iter().zip(worst) {
+            let allowed = DIRECTION_MAS[body as usize];
+            assert!(worst <= allowed, "{body:?}: {worst} mas, stated {allowed}");
+        }
+    }
+
+    #[test]
+    fn the_moon_about_the_earth_is_the_difference() {
+        let compact = Compact::builtin();
+        let (day, fraction) = (60_000.0, 0.3);
+        let moon = compact.state_at(Body::Moon, day, fraction).unwrap();
+        let earth = compact.state_at(Body::Earth, day, fraction).unwrap();
+        let about = compact.geocentric_moon_at(day, fraction).unwrap();
+        assert!(norm(sub(sub(moon.position, earth.position), about.position)) < 3e-16);
+        assert!(norm(sub(sub(moon.velocity, earth.velocity), about.velocity)) < 1e-17);
+    }
+
+    /// Neighbouring pieces join: the step in position is below what is stated as the error, at every join.
+    #[test]
+    fn pieces_join() {
+        let compact = Compact::builtin();
+        let short = 1e-7;
+        for body in Body::ALL {
+            let series = &compact.series[body as usize];
+            let mut worst = 0.0_f64;
+            for piece in 1..series.pieces {
+                let day = compact.first_mjd + piece as f64 * series.piece_days;
+                let before = compact.stored_state(body, day - 1.0, 1.0 - short).unwrap();
+                let after = compact.stored_state(body, day, 0.0).unwrap();
+                let reached = add(before.position, scale(short, before.velocity));
+                worst = worst.max(norm(sub(reached, after.position)) * ASTRONOMICAL_UNIT_M);
+            }
+            let allowed = 2.0 * compact.error(body).position_m;
+            assert!(worst <= allowed, "{body:?}: a step of {worst} m, stated {allowed}");
+        }
+    }
+
+    #[test]
+    fn outside_is_a_status() {
+        let compact = Compact::builtin();
+        assert!(compact.state_at(Body::Sun, 14_848.0, 0.0).is_ok());
+        assert!(compact.state_at(Body::Sun, 88_575.0, 1.0).is_ok());
+        for (day, fraction) in [
+            (14_847.0, 1.0 - 1e-9),
+            (88_576.0, 1e-9),
+            (f64::NAN, 0.0),
+            (60_000.0, f64::NAN),
+            (f64::INFINITY, 0.0),
+        ] {
+            assert_eq!(compact.state_at(Body::Moon, day, fraction), Err(Status::OutsideEphemeris));
+            assert_eq!(compact.position_at(Body::Moon, day, fraction), Err(Status::OutsideEphemeris));
+        }
+    }
+
+    #[test]
+    fn damage_is_told() {
+        let message = |change: &dyn Fn(&mut Vec<u8>)| {
+            let mut bytes = BYTES.to_vec();
+            change(&mut bytes);
+            let error = Compact::parse(bytes.leak()).and_then(|compact| compact.verify()).unwrap_err();
+            assert!(error.is_table());
+            error.to_string()
+        };
+        let sun = HEADER_BYTES;
+        for (at, new, wanted) in [
+            (0, &b"x"[..], "of this version"),
+            (8, &f64::NAN.to_le_bytes(), "covers MJD NaN"),
+            (sun, &0_u32.to_le_bytes(), "sun: damaged: pieces of 0 days"),
+            (sun + 4, &33_u32.to_le_bytes(), "with 33 coefficients"),
+            (sun + 8, &1_u64.to_le_bytes(), "starts at byte 1 rather"),
+            (sun + 16, &(-1.0_f64).to_le_bytes(), "a quantum of -1 m"),
+            (sun + 40, &[9], "9 bytes wide"),
+            (sun + 40, &[1], "moon: damaged: starts at"),
+            (1_000_000, &[BYTES[1_000_000] ^ 1], "the hash at their end"),
+        ] {
+            let message = message(&|bytes| bytes[at..at + new.len()].copy_from_slice(new));
+            assert!(message.contains(wanted), "{wanted}: {message}");
+        }
+        assert!(message(&|bytes| bytes.truncate(100)).contains("truncated: 100 bytes"));
+        assert!(message(&|bytes| bytes.truncate(1_000_000)).contains("truncated or damaged: 1000000 bytes"));
+    }
 }

@@ -48,21 +48,21 @@ pub(super) fn byte_order(data: &[u8]) -> std::result::Result<bool, String> {
     if data.starts_with(b"DAFETF") {
         return Err("is in NAIF's transfer format; convert it to binary first".into());
     }
-    if data.len() < RECORD_BYTES {
-        return Err(format!(
-            "truncated: {} bytes, and the file record alone takes {RECORD_BYTES}",
-            data.len()
-        ));
-    }
     // Files from before 1997 say NAIF/DAF and do not tell their kind or byte order.
     let old = data.starts_with(b"NAIF/DAF");
     if !old && !data.starts_with(b"DAF/SPK ") {
-        let start = String::from_utf8_lossy(&data[..8]).into_owned();
+        let start = String::from_utf8_lossy(&data[..data.len().min(8)]).into_owned();
         return Err(if data.starts_with(b"DAF/") {
             format!("is a DAF of kind {start:?}, not DAF/SPK")
         } else {
             format!("is not an SPK file: it starts with {start:?}, not \"DAF/SPK \"")
         });
+    }
+    if data.len() < RECORD_BYTES {
+        return Err(format!(
+            "truncated: {} bytes, and the file record alone takes {RECORD_BYTES}",
+            data.len()
+        ));
     }
     // ND and NI, the numbers of doubles and integers in a summary, are 2 and 6 in every SPK file.
     let reads = |big_endian: bool| {

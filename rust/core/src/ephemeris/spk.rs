@@ -17,6 +17,7 @@ use super::{Body, State, chebyshev};
 use crate::constants::{ASTRONOMICAL_UNIT_M, J2000_MJD, SECONDS_PER_DAY};
 use crate::error::{Error, Result, Status};
 use crate::math::vector::{Vector, add, scale, sub};
+use crate::time::{Instant, Tdb};
 
 /// Longest chain of centres followed before it is called a loop; real ones have two or three links.
 const CHAIN_MAX: usize = 12;
@@ -142,6 +143,20 @@ impl Spk {
         self.codes[body as usize]
     }
 
+    /// [`Spk::state_at`] at a typed instant.
+    #[inline]
+    pub fn state(&self, body: Body, tdb: Instant<Tdb>) -> std::result::Result<State, Status> {
+        let (day, fraction) = tdb.mjd_parts();
+        self.state_at(body, day, fraction)
+    }
+
+    /// [`Spk::position_at`] at a typed instant.
+    #[inline]
+    pub fn position(&self, body: Body, tdb: Instant<Tdb>) -> std::result::Result<Vector, Status> {
+        let (day, fraction) = tdb.mjd_parts();
+        self.position_at(body, day, fraction)
+    }
+
     /// Barycentric state of a body at the TDB instant `day + fraction` (Modified Julian Date, any
     /// split; two parts keep 1e-11 s). [`Status::OutsideEphemeris`] outside the kernel, in a gap, or
     /// where a record is damaged.
@@ -202,18 +217,20 @@ impl Spk {
             Some((segment.centre, link?))
         };
 
-        // The codes passed on the way up, with the sum of the links to each.
-        let mut passed = [(target, T::NONE); CHAIN_MAX];
-        let mut length = 1;
-        let (mut code, mut sum) = (target, T::NONE);
-        while code != centre && length < CHAIN_MAX {
-            let Some((next, link)) = step(code) else { break };
-            sum = sum.plus(link);
-            code = next;
-            passed[length] = (code, sum);
-            length += 1;
-        }
-        if code == centre {
+        let climb = |from: i32, to: i32| -> Option<T> {
+            let (mut code, mut sum) = (from, T::NONE);
+            for _ in 0..CHAIN_MAX {
+                if code == to {
+                    return Some(sum);
+                }
+                let (next, link) = step(code)?;
+                sum = sum.plus(link);
+                code = next;
+            }
+            None
+        };
+
+        if let Some(sum) = climb(target, centre) {
             return Ok(sum);
         }
         let (mut code, mut down) = (centre, T::NONE);
@@ -221,7 +238,7 @@ impl Spk {
             let (next, link) = step(code).ok_or(Status::OutsideEphemeris)?;
             down = down.plus(link);
             code = next;
-            if let Some((_, up)) = passed[..length].iter().find(|(met, _)| *met == code) {
+            if let Some(up) = climb(target, code) {
                 return Ok(up.minus(down));
             }
         }
@@ -235,7 +252,9 @@ impl Spk {
     }
 
     fn segment_at(&self, target: i32, since_s: f64) -> Option<&Segment> {
-        self.segments_of(target).iter().find(|s| since_s >= s.start_s && since_s <= s.stop_s)
+        let first = self.segments.partition_point(|segment| segment.target < target);
+        let mut same = self.segments[first..].iter().take_while(|segment| segment.target == target);
+        same.find(|segment| since_s >= segment.start_s && since_s <= segment.stop_s)
     }
 
     /// The intervals, MJD TDB, over which the body coded `target` is known about the barycentre:
@@ -407,29 +426,38 @@ impl Segment {
         sound.then_some(Located { coefficients, x: 2.0 * into_s / self.record_s - 1.0 })
     }
 
+    /// The coefficients of a set of three series above the constant term, the highest first, and that.
     #[inline(always)]
-    fn coefficient<const BIG: bool>(&self, words: &[u8], set: usize, order: usize) -> Vector {
-        std::array::from_fn(|axis| number::<BIG>(words, (3 * set + axis) * self.count + order))
+    fn series<const BIG: bool>(&self, words: &[u8], set: usize) -> (impl Iterator<Item = Vector>, Vector) {
+        let length = self.count * WORD_BYTES;
+        let axis = |axis: usize| words[(3 * set + axis) * length..][..length].split_at(WORD_BYTES);
+        let ((x0, x), (y0, y), (z0, z)) = (axis(0), axis(1), axis(2));
+        let words = |series| <[u8]>::rchunks_exact(series, WORD_BYTES);
+        let higher = words(x).zip(words(y)).zip(words(z));
+        let vector = |x, y, z| [number::<BIG>(x, 0), number::<BIG>(y, 0), number::<BIG>(z, 0)];
+        (higher.map(move |((x, y), z)| vector(x, y, z)), vector(x0, y0, z0))
     }
 
     #[inline(always)]
     fn position<const BIG: bool>(&self, bytes: &[u8], day_s: f64, rest_s: f64) -> Option<Vector> {
         let Located { coefficients, x } = self.locate::<BIG>(bytes, day_s, rest_s)?;
-        let km = chebyshev::value(self.count, x, |order| self.coefficient::<BIG>(coefficients, 0, order));
-        finite(scale(AU_PER_KM, km))
+        let (higher, constant) = self.series::<BIG>(coefficients, 0);
+        finite(scale(AU_PER_KM, chebyshev::value(x, higher, constant)))
     }
 
     #[inline(always)]
     fn state<const BIG: bool>(&self, bytes: &[u8], day_s: f64, rest_s: f64) -> Option<State> {
         let Located { coefficients, x } = self.locate::<BIG>(bytes, day_s, rest_s)?;
-        let series = |set: usize| move |order: usize| self.coefficient::<BIG>(coefficients, set, order);
+        let (higher, constant) = self.series::<BIG>(coefficients, 0);
         let (km, km_s) = match self.form {
             Form::Position => {
-                let (km, slope) = chebyshev::value_and_slope(self.count, x, series(0));
+                let (km, slope) = chebyshev::value_and_slope(x, higher, constant);
                 (km, scale(2.0 / self.record_s, slope))
             }
             Form::PositionAndVelocity => {
-                (chebyshev::value(self.count, x, series(0)), chebyshev::value(self.count, x, series(1)))
+                let km = chebyshev::value(x, higher, constant);
+                let (higher, constant) = self.series::<BIG>(coefficients, 1);
+                (km, chebyshev::value(x, higher, constant))
             }
         };
         Some(State {
@@ -504,7 +532,7 @@ impl Summary {
             && record_s > 0.0
             && whole(record_words, 2.0 + sets as f64)
             && whole(records, 1.0)
-            && (record_words as usize - 2) % sets == 0
+            && (record_words as usize - 2).is_multiple_of(sets)
             && record_words as usize * records as usize + 4 == words;
         if !consistent {
             return damaged(format!(
@@ -549,3 +577,6 @@ impl Summary {
         Ok(segment)
     }
 }
+
+#[cfg(test)]
+mod tests;
