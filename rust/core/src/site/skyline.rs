@@ -105,7 +105,7 @@ fn check(azimuths: &[f64], altitudes: &[f64]) -> Result<()> {
     }
     for (i, (&azimuth, &altitude)) in azimuths.iter().zip(altitudes).enumerate() {
         let what = |quantity: &str| format!("{quantity} of skyline point {}", i + 1);
-        let degrees = |angle: f64| format!("{} degrees", angle / RADIANS_PER_DEGREE);
+        let degrees = |angle: f64| format!("{} degrees", displayed_deg(angle));
         if !(0.0..=TURN * (1.0 + f64::EPSILON)).contains(&azimuth) {
             return Err(Error::invalid(
                 what("azimuth"),
@@ -128,8 +128,13 @@ fn check(azimuths: &[f64], altitudes: &[f64]) -> Result<()> {
     Ok(())
 }
 
+/// Degrees for a message, without the rounding of the way through radians: 35, not 35.00000000000001.
+fn displayed_deg(angle: f64) -> f64 {
+    (angle / RADIANS_PER_DEGREE * 1e9).round() / 1e9
+}
+
 fn crowded(azimuth: f64, together: usize) -> Error {
-    let given = format!("{together} points at azimuth {} degrees", azimuth / RADIANS_PER_DEGREE);
+    let given = format!("{together} points at azimuth {} degrees", displayed_deg(azimuth));
     Error::invalid("skyline", given, "one point, or two for a step, at one azimuth (0 and 360 are one)")
 }
 
