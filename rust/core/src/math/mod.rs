@@ -2,6 +2,7 @@
 
 pub mod bernstein;
 pub mod chebyshev;
+pub mod dispatch;
 pub mod roots;
 pub mod spline;
 pub mod vector;
