@@ -3,6 +3,8 @@
 pub mod bernstein;
 pub mod chebyshev;
 pub mod dispatch;
+pub mod elementary;
+mod elementary_coefficients;
 pub mod roots;
 pub mod spline;
 pub mod vector;
