@@ -9,15 +9,20 @@
 //! where s is computed from X and Y of the model before dX and dY are added.
 
 mod arguments;
+mod extrapolation;
+mod iers_tables;
 mod intermediate;
 mod nutation;
+mod orientation;
 mod precession;
 mod precession_nutation;
 mod rotation;
+mod spline;
 mod tables;
 
 pub use intermediate::{Intermediate, celestial_to_intermediate};
 pub use nutation::{Nutation, nutation, nutation_iau_2000a};
+pub use orientation::{Orientation, Pole, Provenance, Quality, Source, ut1};
 pub use precession::{PrecessionAngles, mean_obliquity, precession_angles};
 pub use precession_nutation::{
     PrecessionNutation, bias_precession_nutation, equation_of_the_origins, intermediate,

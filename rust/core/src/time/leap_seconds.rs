@@ -89,6 +89,9 @@ pub struct LeapSeconds {
 }
 
 impl LeapSeconds {
+    /// 1960-01-01, the day on which UTC begins.
+    pub const FIRST_MJD: i64 = 36_934;
+
     /// The table this program was built with: 1960 to the leap second at the end of 2016, complete up
     /// to [`LeapSeconds::expires_mjd`]. Costs nothing.
     pub fn builtin() -> Self {
