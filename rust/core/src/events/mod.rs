@@ -1,1 +1,18 @@
-//! Under construction.
+//! When a target rises, sets and passes the meridian; twilights; the almanac of a site.
+
+mod almanac;
+mod arc;
+mod crossing;
+mod days;
+mod passages;
+mod scatter;
+
+pub use almanac::{AlmanacRow, almanac, night_bounds};
+pub use arc::{
+    Arc, BODY_ARC_ERROR_RAD, BODY_NODES, BodyArc, SEPARATION_NODES, STAR_ARC_ERROR_RAD, StarArc,
+    directions_at, node_fraction,
+};
+pub use crossing::{Crossing, Culmination, DayPath};
+pub use days::{Days, span_ends, track_for, utc_text};
+pub use passages::{Event, EventKind, Passage, rise_transit_set};
+pub use scatter::horizon_scatter;

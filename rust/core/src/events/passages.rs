@@ -1,0 +1,199 @@
+//! Rise, transit and set of targets over a span.
+
+use super::arc::Arc;
+use super::crossing::{Crossing, Culmination, DayPath};
+use super::days::Days;
+use super::scatter::horizon_scatter;
+use crate::astrometry::Targets;
+use crate::constants::SECONDS_PER_DAY;
+use crate::error::Status;
+use crate::horizon::{altitude, azimuth};
+use crate::time::Utc;
+
+/// What happens.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+#[repr(u8)]
+pub enum EventKind {
+    /// The target passes the threshold upwards.
+    Rise = 0,
+    /// The target passes the meridian on the side of the equator: upper culmination.
+    Transit = 1,
+    /// The target passes the threshold downwards.
+    Set = 2,
+}
+
+/// One event of one target.
+#[derive(Debug, Clone, Copy)]
+pub struct Event {
+    /// What happens.
+    pub kind: EventKind,
+    /// When, to the nanosecond.
+    pub time: Utc,
+    /// Azimuth, radians.
+    pub azimuth: f64,
+    /// Observed altitude, radians.
+    pub altitude: f64,
+    /// How far the computed instant may be from the true one for the stated atmosphere, seconds.
+    pub computed_error_s: f64,
+    /// Standard deviation by which refraction strays from the stated atmosphere, seconds.
+    pub horizon_scatter_s: f64,
+}
+
+/// What a target does over a span.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+#[repr(u8)]
+pub enum Passage {
+    /// It rises or sets.
+    Crosses = 0,
+    /// It stays above the threshold.
+    AlwaysAbove = 1,
+    /// It stays below the threshold.
+    AlwaysBelow = 2,
+    /// The row has no direction: its [`Status`] says why.
+    BadRow = 3,
+}
+
+/// Scratch space of a caller who asks for many targets.
+#[derive(Debug, Default)]
+struct Scratch {
+    crossings: Vec<Crossing>,
+    culminations: Vec<Culmination>,
+}
+
+/// Appends the events of target `row` in the span, in order of time, and says what the target does.
+///
+/// * `threshold`: the observed altitude of the centre, radians
+///
+/// A star's events are good to 1 ms against the exact chain wherever its altitude changes faster than
+/// 3″/s, a body's to 20 ms (`tests/test_accuracy_events.py`); `computed_error_s` covers the rest.
+pub fn rise_transit_set(
+    days: &Days<'_>,
+    targets: &Targets<'_>,
+    row: usize,
+    threshold: f64,
+    events: &mut Vec<Event>,
+) -> (Passage, Status) {
+    let status = targets.status(row);
+    if status.is_bad() {
+        return (Passage::BadRow, status);
+    }
+    let before = events.len();
+    let topocentric = days.observer().refraction.topocentric_altitude(threshold);
+    let mut scratch = Scratch::default();
+    let mut above_at_start = false;
+    for (index, arc) in days.arcs.iter().enumerate() {
+        let above = match targets {
+            Targets::Catalog(catalog) => {
+                let path = days.star(index, &catalog.star(row));
+                day_events(days, arc, &path, topocentric, &mut scratch, events)
+            }
+            Targets::Bodies(bodies) => match days.body(index, bodies[row]) {
+                Ok(path) => day_events(days, arc, &path, topocentric, &mut scratch, events),
+                Err(status) => {
+                    events.truncate(before);
+                    return (Passage::BadRow, status);
+                }
+            },
+        };
+        if index == 0 {
+            above_at_start = above;
+        }
+    }
+    let crosses = events[before..].iter().any(|event| event.kind != EventKind::Transit);
+    let passage = match (crosses, above_at_start) {
+        (true, _) => Passage::Crosses,
+        (false, true) => Passage::AlwaysAbove,
+        (false, false) => Passage::AlwaysBelow,
+    };
+    (passage, status.worst(days.note()))
+}
+
+/// Appends one day's events within the span; returns whether the target is above the threshold where
+/// the span begins in this day.
+fn day_events<P: DayPath>(
+    days: &Days<'_>,
+    arc: &Arc<'_>,
+    path: &P,
+    threshold: f64,
+    scratch: &mut Scratch,
+    events: &mut Vec<Event>,
+) -> bool {
+    scratch.crossings.clear();
+    scratch.culminations.clear();
+    let above_at_midnight = path.altitude_crossings(arc, threshold.sin(), &mut scratch.crossings);
+    path.culminations(arc, &mut scratch.culminations);
+    let before = events.len();
+    let mut above = above_at_midnight;
+    for crossing in &scratch.crossings {
+        let kind = if crossing.rising { EventKind::Rise } else { EventKind::Set };
+        let event = event(days, arc, path, kind, crossing.at);
+        if event.time.nanoseconds() < days.start.nanoseconds() {
+            above = crossing.rising;
+        }
+        events.push(event);
+    }
+    for culmination in scratch.culminations.iter().filter(|culmination| culmination.upper) {
+        events.push(event(days, arc, path, EventKind::Transit, culmination.at));
+    }
+    let span = days.start.nanoseconds()..days.stop.nanoseconds();
+    let mut kept = before;
+    for index in before..events.len() {
+        if span.contains(&events[index].time.nanoseconds()) {
+            events[kept] = events[index];
+            kept += 1;
+        }
+    }
+    events.truncate(kept);
+    events[before..].sort_by_key(|event| event.time.nanoseconds());
+    above
+}
+
+fn event<P: DayPath>(days: &Days<'_>, arc: &Arc<'_>, path: &P, kind: EventKind, at: f64) -> Event {
+    let (local, rate) = path.local_and_rate(arc, at);
+    let refraction = arc.observer.refraction;
+    let observed = refraction.observed_altitude(altitude(local));
+    let angle_error = path.error_rad() + arc.pole_error;
+    let (error_s, scatter_s) = match kind {
+        EventKind::Transit => {
+            // Across the meridian the direction moves in azimuth: cos h · dA/dt is the rate eastwards.
+            (seconds(angle_error, rate[1].abs(), f64::INFINITY), 0.0)
+        }
+        EventKind::Rise | EventKind::Set => {
+            let altitude_rate = rate[2].abs() / local[0].hypot(local[1]);
+            // Near a culmination the altitude turns over: the bound is that of a parabola.
+            let curvature = diurnal_curvature(arc, local);
+            (
+                seconds(angle_error, altitude_rate, curvature),
+                seconds(horizon_scatter(refraction, observed), altitude_rate, f64::INFINITY),
+            )
+        }
+    };
+    Event {
+        kind,
+        time: days.utc(arc, at),
+        azimuth: azimuth(local),
+        altitude: observed,
+        computed_error_s: error_s + arc.ut1_error_s + ROUNDING_S,
+        horizon_scatter_s: scatter_s,
+    }
+}
+
+/// Rounding of the instant, of Newton's last step and of TDB, seconds.
+const ROUNDING_S: f64 = 1e-5;
+
+/// The size of d²(sin h)/dt² a day² at culmination: cos φ cos δ ω².
+fn diurnal_curvature(arc: &Arc<'_>, local: [f64; 3]) -> f64 {
+    let sin_declination = crate::horizon::sin_declination(local, arc.latitude);
+    let cos_declination = (1.0 - sin_declination * sin_declination).max(0.0).sqrt();
+    let turn = crate::constants::EARTH_ROTATION_RAD_PER_S * SECONDS_PER_DAY;
+    arc.latitude.cos * cos_declination * turn * turn
+}
+
+/// Seconds in which an angle is passed at a rate a day, at most those to pass it from rest, at most a day.
+fn seconds(angle: f64, rate_per_day: f64, curvature_per_day2: f64) -> f64 {
+    let by_rate = angle / rate_per_day;
+    let from_rest =
+        if curvature_per_day2.is_finite() { (2.0 * angle / curvature_per_day2).sqrt() } else { 1.0 };
+    let days = by_rate.min(from_rest);
+    if days < 1.0 { days * SECONDS_PER_DAY } else { SECONDS_PER_DAY }
+}
