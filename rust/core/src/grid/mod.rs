@@ -1,0 +1,13 @@
+//! Many targets at once: the only part of the crate that uses threads.
+//!
+//! Work is cut into blocks of targets, in the same way for every number of threads, and each block is
+//! worked through by one thread in the order of its rows: the results are the same bits whoever did
+//! which block. The caller owns the outputs and is asked, some twenty times a second, whether to go on.
+
+mod parallel;
+mod place;
+mod tables;
+
+pub use parallel::{KEEP_GOING, Workers};
+pub use place::{PLACE_AIRMASS, PlaceColumn, PlaceColumns, Shape, place};
+pub use tables::{EventTable, WindowTable, event_table, window_table};

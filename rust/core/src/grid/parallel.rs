@@ -1,0 +1,130 @@
+//! Threads.
+//!
+//! Threads are started for each call and gone when it returns (50 µs for two): nothing is left behind
+//! that a fork could break, and there is no pool to configure.
+
+use crate::error::{Error, Result};
+use std::sync::atomic::{AtomicBool, AtomicUsize, Ordering};
+use std::sync::{Condvar, Mutex, PoisonError};
+use std::time::Duration;
+
+/// How often the caller is asked whether to go on.
+const ASK_EVERY: Duration = Duration::from_millis(40);
+
+/// For callers who never want to stop.
+pub const KEEP_GOING: fn() -> bool = || true;
+
+/// How to run: on how many threads, and whom to ask whether to go on.
+pub struct Workers<'a> {
+    threads: usize,
+    keep_going: &'a mut dyn FnMut() -> bool,
+}
+
+impl<'a> Workers<'a> {
+    /// `threads` 0 means as many as the machine runs at once. `keep_going` is called on the calling
+    /// thread, some twenty times a second; when it says no, the call ends with [`Error::is_interrupted`].
+    pub fn new(threads: usize, keep_going: &'a mut dyn FnMut() -> bool) -> Self {
+        let threads = match threads {
+            0 => std::thread::available_parallelism().map_or(1, usize::from),
+            threads => threads,
+        };
+        Workers { threads, keep_going }
+    }
+
+    /// Does `work` on every item, in any order.
+    ///
+    /// # Errors
+    /// When the caller said to stop; some items are then not done.
+    pub fn for_each<T: Send>(&mut self, items: Vec<T>, work: impl Fn(T) + Sync) -> Result<()> {
+        let threads = self.threads.min(items.len());
+        if threads <= 1 {
+            return self.alone(items, work);
+        }
+        let queue = Mutex::new(items.into_iter());
+        let stop = AtomicBool::new(false);
+        let busy = AtomicUsize::new(threads);
+        let (lock, done) = (Mutex::new(()), Condvar::new());
+        std::thread::scope(|scope| {
+            for _ in 0..threads {
+                scope.spawn(|| {
+                    let _signal = Signal { busy: &busy, lock: &lock, done: &done };
+                    while !stop.load(Ordering::Relaxed) {
+                        let next = queue.lock().unwrap_or_else(PoisonError::into_inner).next();
+                        match next {
+                            Some(item) => work(item),
+                            None => break,
+                        }
+                    }
+                });
+            }
+            let mut guard = lock.lock().unwrap_or_else(PoisonError::into_inner);
+            while busy.load(Ordering::Acquire) > 0 {
+                guard = done.wait_timeout(guard, ASK_EVERY).unwrap_or_else(PoisonError::into_inner).0;
+                if busy.load(Ordering::Acquire) > 0 && !(self.keep_going)() {
+                    stop.store(true, Ordering::Relaxed);
+                }
+            }
+        });
+        if stop.into_inner() { Err(Error::interrupted()) } else { Ok(()) }
+    }
+
+    fn alone<T>(&mut self, items: Vec<T>, work: impl Fn(T)) -> Result<()> {
+        let mut asked = std::time::Instant::now();
+        for item in items {
+            work(item);
+            if asked.elapsed() >= ASK_EVERY {
+                if !(self.keep_going)() {
+                    return Err(Error::interrupted());
+                }
+                asked = std::time::Instant::now();
+            }
+        }
+        Ok(())
+    }
+}
+
+/// Says that a thread is done, also when it panics: the caller must not wait for ever.
+struct Signal<'a> {
+    busy: &'a AtomicUsize,
+    lock: &'a Mutex<()>,
+    done: &'a Condvar,
+}
+
+impl Drop for Signal<'_> {
+    fn drop(&mut self) {
+        let _guard = self.lock.lock().unwrap_or_else(PoisonError::into_inner);
+        self.busy.fetch_sub(1, Ordering::Release);
+        self.done.notify_one();
+    }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    #[test]
+    fn every_item_is_done_once() {
+        for threads in [1, 2, 7] {
+            let count = AtomicUsize::new(0);
+            let mut go = KEEP_GOING;
+            Workers::new(threads, &mut go)
+                .for_each((0..1000).collect(), |i: usize| {
+                    count.fetch_add(i, Ordering::Relaxed);
+                })
+                .unwrap();
+            assert_eq!(count.into_inner(), 499_500);
+        }
+    }
+
+    #[test]
+    fn a_caller_who_says_no_is_heard_within_a_fifth_of_a_second() {
+        for threads in [1, 2] {
+            let mut never = || false;
+            let begun = std::time::Instant::now();
+            let result = Workers::new(threads, &mut never)
+                .for_each(vec![(); 10_000], |()| std::thread::sleep(Duration::from_millis(1)));
+            assert!(result.unwrap_err().is_interrupted());
+            assert!(begun.elapsed() < Duration::from_millis(200));
+        }
+    }
+}
