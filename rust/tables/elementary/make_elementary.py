@@ -118,7 +118,7 @@ def coefficients_file():
         "",
         "//! Minimax polynomials of the elementary functions, and constants in parts.",
         "//!",
-        "//! Lowest power first, in t, the square of the reduced argument. The script named above says how they were made.",
+        "//! Lowest power first, in t, the square of the reduced argument; the script above says how they were made.",
         "",
     ]
     for name, (target, weight, top, sizes) in POLYNOMIALS.items():

@@ -2,7 +2,7 @@
 
 //! Minimax polynomials of the elementary functions, and constants in parts.
 //!
-//! Lowest power first, in t, the square of the reduced argument. The script named above says how they were made.
+//! Lowest power first, in t, the square of the reduced argument; the script above says how they were made.
 
 /// Leaves a relative error of 3.8e-18 of the function.
 #[rustfmt::skip]
