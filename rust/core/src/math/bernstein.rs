@@ -38,6 +38,31 @@ impl<const N: usize> Crossings<N> {
             self.count += 1;
         }
     }
+
+    /// Brings the crossings into line with signs known from outside at −1 and at 1, `own` being the sign before the first.
+    ///
+    /// Rounding may carry a crossing over an end. One within 1e-6 of an end whose sign is other than known
+    /// has been so carried inwards and is dropped; where there is none, one was carried outwards and is put at the end.
+    pub(super) fn reconcile(&mut self, own: bool, start: bool, stop: bool) {
+        const NEAR: f64 = 1e-6;
+        if own != start {
+            if self.first().is_some_and(|c| c.at < NEAR - 1.0) || self.count == N {
+                self.items.copy_within(1..self.count, 0);
+                self.count -= 1;
+            } else {
+                self.items.copy_within(0..self.count, 1);
+                self.items[0] = Crossing { at: -1.0, rising: !start };
+                self.count += 1;
+            }
+        }
+        if self.last().map_or(start, |c| c.rising) != stop {
+            if self.last().is_some_and(|c| c.at > 1.0 - NEAR) || self.count == N {
+                self.count -= 1;
+            } else {
+                self.push(1.0, stop);
+            }
+        }
+    }
 }
 
 impl<const N: usize> std::ops::Deref for Crossings<N> {
