@@ -39,7 +39,7 @@ impl<const N: usize> Crossings<N> {
         }
     }
 
-    /// Brings the crossings into line with signs known from outside at −1 and at 1, `own` being the sign before the first.
+    /// Brings the crossings into line with signs known from outside at −1 and at 1; `own` is the sign before the first.
     ///
     /// Rounding may carry a crossing over an end. One within 1e-6 of an end whose sign is other than known
     /// has been so carried inwards and is dropped; where there is none, one was carried outwards and is put at the end.
@@ -89,7 +89,7 @@ impl<const N: usize> Conversion<N> {
 /// Largest number of coefficients whose conversion fits into 128-bit whole numbers.
 pub const MOST_COEFFICIENTS: usize = 40;
 
-/// Rababah's theorem 2: M[k][j] = Σ_i (−1)^(k−i) C(2k, 2i) C(n−k, j−i) / C(n, j).
+/// Rababah's theorem 2: `M[k][j] = Σ_i (−1)^(k−i) C(2k, 2i) C(n−k, j−i) / C(n, j)`.
 const fn conversion<const N: usize>() -> [[f64; N]; N] {
     assert!(N >= 1 && N <= MOST_COEFFICIENTS, "1 to 40 coefficients");
     let mut choose = [[0i128; 2 * MOST_COEFFICIENTS]; 2 * MOST_COEFFICIENTS];
@@ -126,8 +126,8 @@ const fn conversion<const N: usize>() -> [[f64; N]; N] {
 
 /// Bernstein coefficients on −1 to 1, of degree `N − 1`, of a Chebyshev series of up to [`MOST_COEFFICIENTS`].
 ///
-/// Rounding error below N · 1e-16 · Σ_k |c_k| max_j |M[k][j]|; the largest element grows as 2^k, so that a
-/// series whose coefficients fall by a factor of two or more a degree loses nothing.
+/// Rounding error below N · 1e-16 times the sum over k of |c_k| and the largest element of column T_k of the change
+/// of basis. That element grows as 2^k, so that a series whose coefficients fall by a factor of two or more a degree loses nothing.
 #[inline]
 pub fn from_chebyshev<const N: usize>(coefficients: &[f64; N]) -> [f64; N] {
     let mut bernstein = [0.0; N];

@@ -49,6 +49,27 @@ impl Arithmetic for Fused {
 }
 
 /// A piece of work to be compiled for every instruction set: its arguments are the fields of the implementing type.
+///
+/// ```
+/// use hourarc_core::math::dispatch::{Arithmetic, Isa, Kernel};
+/// use hourarc_core::math::elementary::sin_cos;
+///
+/// struct Sines<'a>(&'a [f64], &'a mut [f64]);
+///
+/// impl Kernel for Sines<'_> {
+///     type Output = ();
+///     #[inline(always)]
+///     fn run<A: Arithmetic>(self) {
+///         for (&angle, sine) in self.0.iter().zip(self.1) {
+///             *sine = sin_cos::<A>(angle).0;
+///         }
+///     }
+/// }
+///
+/// let mut sines = [0.0; 3];
+/// Isa::best().run(Sines(&[0.0, 1.0, 2.0], &mut sines));
+/// assert!((sines[1] - 1.0_f64.sin()).abs() < 1e-15);
+/// ```
 pub trait Kernel {
     /// What the work returns.
     type Output;

@@ -1,13 +1,14 @@
-//! Sine and cosine, their inverses and the arctangents as straight-line arithmetic: no branch, no call, no table, so that a loop over
-//! them is vectorised by whichever instruction set [`dispatch`](crate::math::dispatch) compiles it for.
+//! Sine and cosine, their inverses and the arctangents as straight-line arithmetic: no branch, no call, no
+//! table, so that a loop over them is vectorised by whichever instruction set
+//! [`dispatch`](crate::math::dispatch) compiles it for.
 //!
-//! Errors are stated in units in the last place (ulp) of the result, as the worst of dense, random and hard arguments
-//! against 60-digit values ([`tests/reference/elementary.csv`]) and against the standard library, for separate and fused multiply-adds
-//! alike; `errors_are_those_stated` proves them. The functions named `_coarse` are good to about 1e-12 and cost less.
+//! Errors are stated in units in the last place (ulp) of the result, as the worst over dense, random and hard
+//! arguments, for separate and fused multiply-adds alike: `errors_are_those_stated` holds them to 60-digit values
+//! (`tests/reference/elementary.csv`), and `dense_and_random_arguments_agree_with_the_standard_library` to those of
+//! the standard library. The functions named `_coarse` are good to about 1e-12 and take about three quarters of the time.
 //!
-//! NaN in gives NaN out. Zeros keep their signs. Polynomials: `rust/tables/elementary/make_elementary.py`.
-//!
-//! [`tests/reference/elementary.csv`]: the file of that name at the top of the repository.
+//! NaN in gives NaN out. Zeros keep their signs (but not in the coarse sine). Polynomials:
+//! `rust/tables/elementary/make_elementary.py`. Times: `examples/elementary_speed.rs`.
 
 use crate::math::dispatch::Arithmetic;
 use crate::math::elementary_coefficients as table;
@@ -54,8 +55,9 @@ fn from_quadrant<A: Arithmetic, const S: usize, const C: usize>(
 
 /// Sine and cosine of an angle in radians, −1e5 to 1e5.
 ///
-/// Error at most 1.2 ulp, near the zeros of both too. Beyond the range it grows, to 1e-10 at 1e6 and nonsense at 1e15. Infinity gives NaN.
-/// Reduction by π/2 in three parts after Cody & Waite 1980, *Software Manual for the Elementary Functions*, chapter 8 [from memory].
+/// Error at most 1.2 ulp, near the zeros of both too. Beyond the range it grows, to 1e-10 at 1e6 and nonsense at 1e15.
+/// Infinity gives NaN. Reduction by π/2 in three parts after Cody & Waite 1980, *Software Manual for the Elementary
+/// Functions*, chapter 8 [from memory].
 #[inline(always)]
 pub fn sin_cos<A: Arithmetic>(angle: f64) -> (f64, f64) {
     let x = angle.abs();

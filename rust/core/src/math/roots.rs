@@ -101,8 +101,8 @@ fn middle(low: f64, high: f64) -> f64 {
 /// Ridders 1979, IEEE Trans. Circuits Syst. 26, 979 [from memory]: an exponential factor straightens the
 /// function through the ends and the middle, and the straight line's root is the next point. The bracket at least halves
 /// with every pair of evaluations, and the number of good digits about doubles. The result is one end of a bracket
-/// no wider than `tolerance` (at least two spacings of doubles at the farther end), closed by a probe beyond
-/// the estimate. At most 2 + 3 ⌈log₂((high − low) / tolerance)⌉ evaluations, 8 to 16 where the function is smooth.
+/// no wider than `tolerance` (at least two spacings of doubles at the farther end), closed by a probe beyond the
+/// estimate. At most 2 + 3 log₂((high − low) / tolerance), rounded up, evaluations; 8 to 16 where the function is smooth.
 pub fn ridders(mut f: impl FnMut(f64) -> f64, low: f64, high: f64, tolerance: f64) -> Option<f64> {
     let (mut a, mut b) = ((low, f(low)), (high, f(high)));
     if a.1 == 0.0 {

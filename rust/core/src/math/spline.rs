@@ -11,8 +11,8 @@ pub type Piece<const N: usize> = [[f64; N]; 4];
 /// A twice continuously differentiable cubic spline of `N` channels on uniform knots.
 ///
 /// Far from the ends it errs, to leading order in the step h, by h⁴ f⁗ / 384 at the middle of a piece and
-/// less elsewhere; its rate by h³ f⁗ / (72 √3) at most. Reference: Ahlberg, Nilson & Walsh, *The Theory of Splines and
-/// Their Applications* (1967), section 2.1 for the equations of the second derivatives [from memory].
+/// less elsewhere; its rate by h³ f⁗ / (72 √3) at most. Reference: Ahlberg, Nilson & Walsh, *The Theory of Splines
+/// and Their Applications* (1967), section 2.1 for the equations of the second derivatives [from memory].
 /// Proved by `errs_as_theory_says_and_no_more`.
 #[derive(Debug, Clone, PartialEq)]
 pub struct Spline<const N: usize> {
