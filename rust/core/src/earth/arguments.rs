@@ -1,5 +1,6 @@
 //! The fundamental arguments of nutation theory, radians; t in Julian centuries of TDB from J2000.0, for
-//! which TT serves (the difference moves no argument by more than 1e-8″ that matters).
+//! which TT serves: in the 1.7 ms between them the Moon moves 0.9 mas, which changes no term of nutation
+//! by more than 0.01 µas.
 
 use super::polynomial;
 use crate::constants::{RADIANS_PER_ARCSECOND, TURN};

@@ -220,7 +220,8 @@ impl Orientation {
     ///
     /// Errors: those of the table, `ut1_error_s` and `pole_error`, to which past either end is added the
     /// growth that IERS Bulletin A gives for predictions d days ahead, 0.00025 d^0.75 s and
-    /// 0.00068 d^0.80 arcseconds. NaN in, NaN out. A constant orientation before 1960, where UTC does not
+    /// 0.00068 d^0.80 arcseconds (measured for UT1: some 1.5 times that in the first months, 3 times after
+    /// a year and more later, since the day's length wanders; 67 ms after a year, 2 s after ten). NaN in, NaN out. A constant orientation before 1960, where UTC does not
     /// exist, takes TAI−UTC as it was in the beginning of 1960, and is extrapolated.
     pub fn at_tai(&self, tai: Instant<Tai>) -> Pole {
         match &self.kind {

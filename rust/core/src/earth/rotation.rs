@@ -11,7 +11,7 @@ use crate::time::{Instant, Tt, Ut1};
 
 /// Earth rotation angle, radians in [0, 2π).
 ///
-/// Error: rounding, below 0.02 µas over 1900–2100 (`earth_reference`). Source: IERS Conventions (2010)
+/// Error: rounding, below 0.03 µas over 1900–2100 (`earth_reference`). Source: IERS Conventions (2010)
 /// equation 5.15.
 pub fn earth_rotation_angle(ut1: Instant<Ut1>) -> f64 {
     let (day, fraction) = ut1.mjd_parts();
@@ -26,7 +26,7 @@ pub fn earth_rotation_angle(ut1: Instant<Ut1>) -> f64 {
 /// Greenwich mean sidereal time, IAU 2006, radians in [0, 2π).
 ///
 /// It needs both scales: one value for both costs 100 µas. Error against the published expression: below
-/// 0.02 µas (`earth_reference`). Source: Capitaine, Wallace & Chapront 2005, Astronomy & Astrophysics
+/// 0.03 µas (`earth_reference`). Source: Capitaine, Wallace & Chapront 2005, Astronomy & Astrophysics
 /// 432, 355, equation 34; IERS Conventions (2010) equation 5.32.
 pub fn greenwich_mean_sidereal_time(ut1: Instant<Ut1>, tt: Instant<Tt>) -> f64 {
     const PRECESSION: [f64; 6] =
@@ -38,7 +38,7 @@ pub fn greenwich_mean_sidereal_time(ut1: Instant<Ut1>, tt: Instant<Tt>) -> f64 {
 /// Greenwich apparent sidereal time, IAU 2006/2000A, radians in [0, 2π): the Earth rotation angle less the
 /// equation of the origins, so that both routes through the equator give the same attitude.
 ///
-/// Error against the published model: below 0.02 µas (`earth_reference`). Source: IERS Conventions (2010)
+/// Error against the published model: below 0.03 µas (`earth_reference`). Source: IERS Conventions (2010)
 /// equation 5.30; Wallace & Capitaine 2006, Astronomy & Astrophysics 459, 981, section 5.
 pub fn greenwich_apparent_sidereal_time(ut1: Instant<Ut1>, tt: Instant<Tt>) -> f64 {
     normalised(earth_rotation_angle(ut1) - equation_of_the_origins(tt))

@@ -7,7 +7,7 @@ use super::instant::{Instant, Tdb, Tt};
 ///
 /// The seven leading terms of the series of Fairhead & Bretagnon 1990 (Astronomy & Astrophysics 229,
 /// 240), as given by Kaplan 2005 (US Naval Observatory Circular 179, equation 2.6). Valid 1600–2200.
-/// Error: below 10 µs (`agrees_with_the_full_series`); in 10 µs the Earth moves 0.3 m and the Moon,
+/// Error: below 10 µs (9.0 µs against all 787 terms over 1900–2100, `barycentric_time_agrees_with_the_full_series`); in 10 µs the Earth moves 0.3 m and the Moon,
 /// seen from the Earth, 1 cm. The diurnal part, which depends on the observer and stays below 2.1 µs,
 /// is left out.
 pub fn tdb_minus_tt(tt: Instant<Tt>) -> f64 {
