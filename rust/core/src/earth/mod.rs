@@ -9,6 +9,7 @@
 //! where s is computed from X and Y of the model before dX and dY are added.
 
 mod arguments;
+mod daily_table;
 mod extrapolation;
 mod iers_tables;
 mod intermediate;
