@@ -1,0 +1,95 @@
+"""Where a result came from: enough to compute it again, and to see why two results differ.
+
+Nothing in the record changes from one run to the next with the same inputs: there is no date of writing
+in it.
+"""
+
+from __future__ import annotations
+
+import shlex
+from typing import Any
+
+import numpy as np
+
+from ..limits import LIMITS, SUN_CAUTION
+from .plan import Plan
+from .targets import Targets
+
+
+def provenance(
+    *,
+    plan: Plan,
+    site: Any,
+    command: str = "",
+    limits: Any = None,
+    targets: Targets | None = None,
+    **about: Any,
+) -> dict[str, Any]:
+    """The record, by topic; texts, or nested values that go to a file as JSON."""
+    import hourarc
+
+    record: dict[str, Any] = {"software": f"hourarc {hourarc.__version__}"}
+    if command:
+        record["command"] = command
+    record.update(about)
+    record["plan"] = {"file": plan.path.name, "sha256": plan.sha256}
+    if targets is not None:
+        record["targets"] = {
+            "file": targets.path.name,
+            "sha256": targets.sha256,
+            "rows_read": targets.rows_read,
+            "planned": len(targets),
+            "rejected": len(targets.rejected),
+        }
+    record["site"] = site_record(site)
+    if limits is not None:
+        record["limits"] = limits_record(plan, limits)
+        if _sun_limit_lowered(limits):
+            record["caution"] = f"The Sun separation limit was lowered below its default. {SUN_CAUTION}"
+    record["earth_orientation"] = hourarc.Orientation.packaged().provenance.to_dict()
+    record["models"] = models_record()
+    return record
+
+
+def site_record(site: Any) -> dict[str, Any]:
+    """The site as it was computed with: the defaults filled in, the pressure in force."""
+    keys = (
+        "name",
+        "longitude_deg",
+        "latitude_deg",
+        "height_m",
+        "pressure_hpa",
+        "temperature_c",
+        "relative_humidity",
+        "wavelength_um",
+    )
+    record: dict[str, Any] = {key: getattr(site, key) for key in keys}
+    if site.skyline is not None:
+        record["skyline"] = np.asarray(site.skyline).tolist()
+    return record
+
+
+def limits_record(plan: Plan, limits: Any) -> dict[str, Any]:
+    """The limits as they were computed with: the defaults filled in, columns named and not copied."""
+    columns = {key: {"column": column} for key, column in plan.limit_columns.items()}
+    return {key: columns[key] if key in columns else limits[key] for key in limits}
+
+
+def _sun_limit_lowered(limits: Any) -> bool:
+    key = "sun_separation_min_deg"
+    return limits[key] is None or bool(np.min(limits[key], initial=180.0) < LIMITS[key].default)
+
+
+def command_line(*words: object) -> str:
+    """The command as it can be typed again."""
+    return shlex.join(["hourarc", *map(str, words)])
+
+
+def models_record() -> dict[str, str]:
+    """The models of the computation, each by the name its paper or standard gives it."""
+    return {
+        "precession_nutation": "IAU 2006 precession, IAU 2000A nutation with the 2006 adjustments, CIO based",
+        "ephemeris": "built-in compact ephemeris, fitted to JPL DE440",
+        "refraction": "ray trace after Auer & Standish (2000), atmosphere of Hohenkerk & Sinclair (1985)",
+        "altitude_limits": "targets: observed altitude; Sun and Moon: topocentric altitude of the centre",
+    }

@@ -1,0 +1,85 @@
+"""Results as the tables that go to files: the columns of the result objects, joined with the targets' names.
+
+The columns are those of `hourarc.results.COLUMNS`, by the same names and with the same units, UCDs and
+meanings; a file only adds what joins it to its source (`row`, `name`) and what a reader would otherwise
+work out (`duration_s`).
+"""
+
+from __future__ import annotations
+
+from typing import TYPE_CHECKING, Any
+
+import numpy as np
+
+from ..results import COLUMNS, FIRST_BAD_STATUS, Column
+
+if TYPE_CHECKING:
+    import pyarrow as pa
+
+    from .targets import Targets
+
+_ADDED = {
+    "row": Column("", "meta.record", "row of the target in its source file, from 1"),
+    "duration_s": Column("s", "time.duration;obs", "stop minus start"),
+}
+
+#: Decimals in text files: far below the error of the number, so nothing is lost. Others are written in full.
+DECIMALS = {
+    "duration_s": 6,
+    "best_airmass": 6,
+    "moon_age_d": 6,
+    "moon_illuminated_fraction": 6,
+    "dark_hours": 6,
+    "dark_hours_moonless": 6,
+}
+
+
+def windows_table(windows: Any, targets: Targets, first: int = 0) -> pa.Table:
+    """A row a window, by target and time. `first`: the place among `targets` of the result's first target."""
+    import pyarrow as pa
+
+    table = windows.to_arrow()
+    owner = first + np.asarray(windows.target)
+    duration = (np.asarray(windows.stop) - np.asarray(windows.start)) / np.timedelta64(1, "s")
+    columns = {
+        "row": pa.array(targets.row[owner]),
+        "name": targets.name.take(pa.array(owner)),
+        "start": table["start"],
+        "stop": table["stop"],
+        "duration_s": pa.array(duration, pa.float64()),
+        "start_reason": table["start_reason"],
+        "stop_reason": table["stop_reason"],
+        "best_time": table["best_time"],
+        "best_airmass": table["best_airmass"],
+    }
+    return _table(columns)
+
+
+def blocked_table(windows: Any, targets: Targets, first: int = 0) -> pa.Table:
+    """A row a target without a window, with what blocks it. Bad rows are rejected, not blocked."""
+    import pyarrow as pa
+
+    without = (np.asarray(windows.counts) == 0) & (windows.status < FIRST_BAD_STATUS)
+    owner = first + np.flatnonzero(without)
+    return _table(
+        {
+            "row": pa.array(targets.row[owner]),
+            "name": targets.name.take(pa.array(owner)),
+            "blocked_by": pa.array(
+                windows.blocked_by_words[without].astype(object), pa.string()
+            ).dictionary_encode(),
+            "status": pa.array(windows.status_words[without].astype(object), pa.string()).dictionary_encode(),
+        }
+    )
+
+
+def _table(columns: dict[str, Any]) -> pa.Table:
+    import pyarrow as pa
+
+    fields = []
+    for name, values in columns.items():
+        about = (_ADDED.get(name) or COLUMNS[name])._asdict()
+        fields.append(
+            pa.field(name, values.type, metadata={key: text for key, text in about.items() if text})
+        )
+    return pa.table(list(columns.values()), schema=pa.schema(fields))

@@ -1,0 +1,81 @@
+"""Files that appear whole or not at all.
+
+Every file of a result is written under a passing name in the folder of its final one, flushed to the
+disk, and renamed when all of them are complete. The main file is renamed last: where it stands, its
+companions stand.
+"""
+
+from __future__ import annotations
+
+import contextlib
+import os
+from collections.abc import Iterator
+from pathlib import Path
+
+
+class WholeFiles:
+    """Collects the files of one result; `commit` makes them appear together."""
+
+    def __init__(self) -> None:
+        self._pending: list[tuple[Path, Path]] = []
+
+    @contextlib.contextmanager
+    def create(self, path: str | os.PathLike[str]) -> Iterator[Path]:
+        """Yields the passing path that the caller writes to; `path` itself is not touched before `commit`."""
+        path = Path(path)
+        passing = _new_file_beside(path)
+        self._pending.append((passing, path))
+        yield passing
+        with open(passing, "rb+") as handle:
+            os.fsync(handle.fileno())
+
+    def commit(self) -> list[Path]:
+        """Renames the files in the reverse of the order in which they were created, the first one last."""
+        done = []
+        while self._pending:
+            passing, path = self._pending[-1]
+            os.replace(passing, path)
+            self._pending.pop()
+            done.append(path)
+        for folder in {path.parent for path in done}:
+            _flush_folder(folder)
+        return done[::-1]
+
+    def discard(self) -> None:
+        """Takes away what was written so far."""
+        for passing, _ in self._pending:
+            with contextlib.suppress(FileNotFoundError):
+                os.unlink(passing)
+        self._pending.clear()
+
+    def __enter__(self) -> WholeFiles:
+        return self
+
+    def __exit__(self, kind: object, *_: object) -> None:
+        try:
+            if kind is None:
+                self.commit()
+        finally:
+            self.discard()
+
+
+def _new_file_beside(path: Path) -> Path:
+    """An empty file in the folder of `path` that nobody else writes, with the permissions of any new file."""
+    for attempt in range(10_000):
+        passing = path.parent / f".{path.name}.{os.getpid()}-{attempt}.part"
+        try:
+            os.close(os.open(passing, os.O_CREAT | os.O_EXCL | os.O_WRONLY, 0o666))
+        except FileExistsError:
+            continue
+        return passing
+    raise FileExistsError(f"{path}: the folder is full of unfinished files of this name")
+
+
+def _flush_folder(folder: Path) -> None:
+    """Makes the renames themselves durable, where the system lets a folder be opened."""
+    with contextlib.suppress(OSError):
+        descriptor = os.open(folder, os.O_RDONLY)
+        try:
+            os.fsync(descriptor)
+        finally:
+            os.close(descriptor)
