@@ -5,6 +5,7 @@ from __future__ import annotations
 import contextlib
 import datetime
 import sys
+import warnings
 from collections.abc import Iterator
 from pathlib import Path
 from typing import Any
@@ -32,6 +33,7 @@ def plan_night(
     import numpy as np
     import pyarrow as pa
 
+    from ..errors import HourarcWarning
     from ..io.plan import read_plan
     from ..io.problems import WrongInput
     from ..io.provenance import command_line, provenance
@@ -64,7 +66,9 @@ def plan_night(
     with _progress(len(targets), quiet) as step:
         for first in range(0, len(targets), BLOCK):
             last = min(first + BLOCK, len(targets))
-            part = plan.limits(targets, first, last) if plan.limit_columns else limits
+            with warnings.catch_warnings():
+                warnings.simplefilter("ignore", HourarcWarning)  # said once, of the whole list
+                part = plan.limits(targets, first, last) if plan.limit_columns else limits
             result = hourarc.windows(site, targets.catalog(first, last), start, stop, part, threads=threads)
             found.append(windows_table(result, targets, first))
             blocked.append(blocked_table(result, targets, first))

@@ -64,6 +64,8 @@ def column_spec(key: str, value: Any, where: str) -> ColumnSpec:
         and (isinstance(constant, bool) or not isinstance(constant, (int, float)))
     ):
         raise WrongInput(f"{where}: the value of {key} is given {constant!r}; a number is needed")
+    if unit is not None and key in FIELDS:
+        unit_for(FIELDS[key], unit, where)
     return ColumnSpec(column, unit, constant)
 
 
@@ -91,7 +93,7 @@ def find_columns(
 
 def _by_plan(key: str, spec: ColumnSpec, names: list[str], units: Mapping[str, str], source: str) -> Found:
     if spec.column is None:
-        unit = unit_for(FIELDS[key], spec.unit, f"[columns] {key}") if spec.unit and key in FIELDS else ""
+        unit = unit_for(FIELDS[key], spec.unit, f"{source}: [columns] {key}") if spec.unit and key in FIELDS else ""
         return Found(None, unit or (FIELDS[key].unit if key in FIELDS else ""), True, True, spec.value)
     name = locate(spec.column, names, f"[columns] {key}", source)
     if key not in FIELDS:
@@ -100,7 +102,7 @@ def _by_plan(key: str, spec: ColumnSpec, names: list[str], units: Mapping[str, s
     if spec.unit is None:
         unit, stated = _unit_from_file(key, name, in_file, source)
         return Found(name, unit, stated, False)
-    unit = unit_for(FIELDS[key], spec.unit, f"[columns] {key}")
+    unit = unit_for(FIELDS[key], spec.unit, f"{source}: [columns] {key}")
     if in_file and canonical_unit(in_file) != unit and unit not in ("hms", "dms", "mjd", "jd"):
         raise WrongInput(f'{source}, column "{name}": the plan says {unit}, the file says {in_file}')
     return Found(name, unit, True, True)
@@ -199,4 +201,5 @@ def _listed(names: list[str]) -> str:
 
 def _guess(key: str, names: list[str]) -> str:
     """The column that most looks like the field, for the example in a message."""
-    return next((n for n in names if squash(n).startswith(key[:2])), names[0] if names else key)
+    likely = {"ra": ("ra", "right", "alpha"), "dec": ("de", "delta")}[key]
+    return next((n for n in names if squash(n).startswith(likely)), "...")

@@ -2,7 +2,8 @@
 is laid out.
 
     [site]       the keywords of `hourarc.Site`; skyline as a list of [azimuth, altitude] pairs in degrees
-    [limits]     the keywords of `hourarc.Limits`; a value for all targets, "off", or { column = "..." } for one each
+    [limits]     the keywords of `hourarc.Limits`; a value for all targets, "off", or { column = "..." } for
+                 each target's own
     [columns]    for each field of a target the table's column: "RA", or 5 (counted from 1), or
                  { column = "RA", unit = "hourangle" }, or { value = 1991.25 } for all rows
     [targets]    layout ("csv", "tsv", "spaces", "ecsv", "fits", "votable", "parquet"), header (true or

@@ -59,16 +59,15 @@ def blocked_table(windows: Any, targets: Targets, first: int = 0) -> pa.Table:
     """A row a target without a window, with what blocks it. Bad rows are rejected, not blocked."""
     import pyarrow as pa
 
-    without = (np.asarray(windows.counts) == 0) & (windows.status < FIRST_BAD_STATUS)
-    owner = first + np.flatnonzero(without)
+    without = np.flatnonzero((windows.counts == 0) & (windows.status < FIRST_BAD_STATUS))
+    owner = pa.array(first + without)
+    table = windows.targets_to_arrow().take(pa.array(without))
     return _table(
         {
-            "row": pa.array(targets.row[owner]),
-            "name": targets.name.take(pa.array(owner)),
-            "blocked_by": pa.array(
-                windows.blocked_by_words[without].astype(object), pa.string()
-            ).dictionary_encode(),
-            "status": pa.array(windows.status_words[without].astype(object), pa.string()).dictionary_encode(),
+            "row": pa.array(targets.row).take(owner),
+            "name": targets.name.take(owner),
+            "blocked_by": table["blocked_by"],
+            "status": table["status"],
         }
     )
 

@@ -207,7 +207,7 @@ def _field(
         value = float(found.value) * factor + offset  # type: ignore[arg-type]
         if not spec.low <= value <= spec.high:
             raise WrongInput(
-                f"[columns] {spec.key}: given {found.value} {found.unit}, allowed {_range(spec)}"
+                f"{path}: [columns] {spec.key}: given {found.value} {found.unit}, allowed {_range(spec)}"
             )
         return np.full(count, value)
     raw = columns[found.column]

@@ -1,0 +1,165 @@
+"""Plans: what they may say, and what is said of a wrong one, with its line."""
+
+from __future__ import annotations
+
+from pathlib import Path
+
+import hourarc
+import pytest
+from hourarc.io.columns import ColumnSpec
+from hourarc.io.plan import Plan, read_plan
+from hourarc.io.problems import BrokenFile, WrongInput
+
+SITE = "[site]\nname = 'Saltpan Ridge'\nlongitude_deg = 24.5\nlatitude_deg = -20.9\nheight_m = 1148\n"
+
+
+def plan(folder: Path, text: str) -> Plan:
+    path = folder / "plan.toml"
+    path.write_text(text, encoding="utf-8")
+    return read_plan(path)
+
+
+def refused(folder: Path, text: str, error: type[Exception] = WrongInput) -> str:
+    """The message for a plan that is wrong, be it in its words or in its numbers."""
+    with pytest.raises(error) as caught:
+        read = plan(folder, text)
+        read.site()
+        read.limits()
+    message = str(caught.value)
+    assert "plan.toml" in message
+    return message
+
+
+def test_a_whole_plan(tmp_path: Path) -> None:
+    read = plan(
+        tmp_path,
+        SITE
+        + "pressure_hpa = 880\nskyline = [[0, 3.0], [180, 5.0]]\n"
+        + "[limits]\naltitude_min_deg = 'off'\nairmass_max = 1.8\nsun_altitude_max_deg = 'nautical'\n"
+        + "moon_separation_min_deg = { column = 'moon' }\n"
+        + "[columns]\nra = { column = 'RA', unit = 'hourangle' }\ndec = 'DE'\nname = 1\nepoch = { value = 1991.25 }\n"
+        + "[targets]\nlayout = 'spaces'\nheader = false\nmissing = ['-']\n",
+    )
+    site, limits = read.site(), read.limits()
+    assert (site.name, site.height_m, site.pressure_hpa) == ("Saltpan Ridge", 1148.0, 880.0)
+    assert site.skyline.tolist() == [[0.0, 3.0], [180.0, 5.0]]
+    assert limits["airmass_max"] == 1.8 and limits["sun_altitude_max_deg"] == -12.0
+    assert limits["altitude_min_deg"] is None
+    assert read.limit_columns == {"moon_separation_min_deg": "moon"}
+    assert read.columns == {
+        "ra": ColumnSpec("RA", "hourangle"),
+        "dec": ColumnSpec("DE"),
+        "name": ColumnSpec(1),
+        "epoch": ColumnSpec(value=1991.25),
+    }
+    assert (read.layout.layout, read.layout.header, read.layout.missing) == ("spaces", False, ("-",))
+
+
+def test_only_the_site_is_needed(tmp_path: Path) -> None:
+    read = plan(tmp_path, "site.longitude_deg = 24.5\nsite.latitude_deg = -20.9\n")
+    assert read.site().latitude_deg == -20.9
+    assert read.limits() == hourarc.Limits()
+
+
+def test_unknown_keys_name_the_nearest_and_the_line(tmp_path: Path) -> None:
+    assert refused(tmp_path, SITE + "elevation = 3\n").endswith(
+        'plan.toml, line 6, [site]: unknown key "elevation"; known: longitude_deg, latitude_deg, height_m, name, '
+        "pressure_hpa, temperature_c, relative_humidity, wavelength_um, skyline"
+    )
+    message = refused(tmp_path, SITE + "\n[limits]\n# a remark\naltitude_min = 30\n")
+    assert message.endswith('plan.toml, line 9, [limits]: unknown key "altitude_min"; did you mean "altitude_min_deg"?')
+    message = refused(tmp_path, SITE + "[columns]\npm_ra = 'x'\n")
+    assert 'line 7, [columns]: unknown key "pm_ra"; did you mean "pmra"?' in message
+    message = refused(tmp_path, SITE + "[limit]\nairmass_max = 2\n")
+    assert 'line 6: unknown section "limit"; did you mean "limits"?' in message
+    message = refused(tmp_path, SITE + "[targets]\nlayuot = 'csv'\n")
+    assert 'line 7, [targets]: unknown key "layuot"; did you mean "layout"?' in message
+    message = refused(tmp_path, SITE + "[columns]\nra = { colum = 'x' }\n")
+    assert 'line 7, [columns]: ra has an unknown key "colum"; did you mean "column"?' in message
+
+
+@pytest.mark.parametrize(
+    ("key", "value", "allowed"),
+    [
+        ("latitude_deg", "91", "90"),
+        ("latitude_deg", "-90.5", "90"),
+        ("height_m", "-501", "-500"),
+        ("height_m", "10001", "10"),
+        ("longitude_deg", "1000", "360"),
+        ("relative_humidity", "30", "1"),
+    ],
+)
+def test_a_site_outside_the_earth(tmp_path: Path, key: str, value: str, allowed: str) -> None:
+    lines = {"longitude_deg": "24.5", "latitude_deg": "-20.9", "height_m": "1148", key: value}
+    message = refused(tmp_path, "[site]\n" + "".join(f"{k} = {v}\n" for k, v in lines.items()))
+    line = 2 + list(lines).index(key)
+    assert f"plan.toml, line {line}, [site]: Site: {key}: given {value}" in message
+    assert "allowed" in message and allowed in message.partition("allowed")[2]
+
+
+@pytest.mark.parametrize(
+    ("text", "said"),
+    [
+        ("longitude_deg = 24.5\n", "[site]: latitude_deg is missing"),
+        ("longitude_deg = '24.5'\nlatitude_deg = 1\n", "line 2, [site]: longitude_deg is given '24.5'; a number is needed"),
+        ("longitude_deg = true\nlatitude_deg = 1\n", "longitude_deg is given True; a number is needed"),
+        ("longitude_deg = 1\nlatitude_deg = 1\nname = 5\n", "line 4, [site]: name is given 5; a text is needed"),
+        ("longitude_deg = 1\nlatitude_deg = 1\nskyline = [1, 2]\n", "[azimuth, altitude] pairs in degrees is needed"),
+        ("longitude_deg = 1\nlatitude_deg = nan\n", "latitude_deg"),
+    ],
+)
+def test_wrong_values_in_the_site(tmp_path: Path, text: str, said: str) -> None:
+    assert said in refused(tmp_path, "[site]\n" + text)
+
+
+@pytest.mark.parametrize(
+    ("text", "said"),
+    [
+        ("altitude_min_deg = 95", "line 7, [limits]: Limits: altitude_min_deg: given 95, allowed -5 to 90 deg"),
+        ("airmass_max = 0.5", "airmass_max: given 0.5, allowed 1 to 40"),
+        ("airmass_max = '2'", "airmass_max: given '2'"),
+        ("sun_altitude_max_deg = 'nautic'", "the nearest is 'nautical'"),
+        ("airmass_model = 'none'", "airmass_model"),
+        ("moon_separation_min_deg = { col = 'x' }", 'or { column = "..." } to take each target\'s own'),
+        ("altitude_min_deg = 50\naltitude_max_deg = 40", "altitude_min_deg=50 above altitude_max_deg=40"),
+    ],
+)
+def test_wrong_values_in_the_limits(tmp_path: Path, text: str, said: str) -> None:
+    assert said in refused(tmp_path, SITE + "[limits]\n" + text + "\n")
+
+
+@pytest.mark.parametrize(
+    ("text", "said"),
+    [
+        ("ra = 1.5", "ra is given 1.5; a column's name or number is needed"),
+        ("ra = { unit = 'deg' }", 'ra needs either "column" or "value", and not both'),
+        ("ra = { column = 'a', value = 3 }", 'ra needs either "column" or "value", and not both'),
+        ("ra = { column = 'a', unit = 'furlong' }", 'line 7, [columns]: ra cannot be in "furlong"'),
+        ("dec = { column = 'a', unit = 'hourangle' }", "a declination is never in hours"),
+        ("epoch = { value = 'now' }", "the value of epoch is given 'now'; a number is needed"),
+        ("ra = { column = [1] }", "the column of ra is given [1]"),
+    ],
+)
+def test_wrong_values_in_the_columns(tmp_path: Path, text: str, said: str) -> None:
+    assert said in refused(tmp_path, SITE + "[columns]\n" + text + "\n")
+
+
+def test_wrong_values_in_the_layout(tmp_path: Path) -> None:
+    assert "layout is given 'xls'; one of csv, tsv" in refused(tmp_path, SITE + "[targets]\nlayout = 'xls'\n")
+    assert "header is given 1; true or false is needed" in refused(tmp_path, SITE + "[targets]\nheader = 1\n")
+    assert "missing is given '-'; a list of texts" in refused(tmp_path, SITE + "[targets]\nmissing = '-'\n")
+
+
+def test_files_that_are_no_plans(tmp_path: Path) -> None:
+    assert "there is no [site]" in refused(tmp_path, "")
+    message = refused(tmp_path, SITE + "latitude_deg = 3\n")
+    assert "not a TOML file" in message and "line 6" in message
+    (tmp_path / "plan.toml").write_bytes(b"[site]\nname = '\xff'\n")
+    with pytest.raises(BrokenFile, match="byte 15 cannot be read"):
+        read_plan(tmp_path / "plan.toml")
+    assert "site is given 5; it is a section, written [site]" in refused(tmp_path, "site = 5\n")
+
+
+def test_lowering_the_sun_limit_is_cautioned(tmp_path: Path) -> None:
+    with pytest.warns(hourarc.errors.SunLimitWarning, match="never the interlock"):
+        plan(tmp_path, SITE + "[limits]\nsun_separation_min_deg = 10\n").limits()
