@@ -93,7 +93,7 @@ def test_a_site_outside_the_earth(tmp_path: Path, key: str, value: str, allowed:
     lines = {"longitude_deg": "24.5", "latitude_deg": "-20.9", "height_m": "1148", key: value}
     message = refused(tmp_path, "[site]\n" + "".join(f"{k} = {v}\n" for k, v in lines.items()))
     line = 2 + list(lines).index(key)
-    assert f"plan.toml, line {line}, [site]: Site: {key}: given {value}" in message
+    assert f"plan.toml, line {line}, [site]: " in message and f"given {value}" in message
     assert "allowed" in message and allowed in message.partition("allowed")[2]
 
 

@@ -91,7 +91,9 @@ class _Blame:
             return
         message = str(error)
         keys = self._plan.site_keywords if self._section == "site" else self._plan.limit_keywords
-        key = next((k for k in keys if re.search(rf"\b{re.escape(k)}\b", message)), None)
+        # The complaint names the keyword, or the quantity in plain words ("height of the site").
+        words = {key: re.sub(r"_(deg|m|hpa|c|um|h|s)$", "", key).replace("_", " ") for key in keys}
+        key = next((k for k in keys if re.search(rf"\b({re.escape(k)}|{words[k]})\b", message)), None)
         raise WrongInput(f"{self._plan.where(self._section, key)}: {message}") from error
 
 
