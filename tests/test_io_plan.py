@@ -37,7 +37,8 @@ def test_a_whole_plan(tmp_path: Path) -> None:
         + "pressure_hpa = 880\nskyline = [[0, 3.0], [180, 5.0]]\n"
         + "[limits]\naltitude_min_deg = 'off'\nairmass_max = 1.8\nsun_altitude_max_deg = 'nautical'\n"
         + "moon_separation_min_deg = { column = 'moon' }\n"
-        + "[columns]\nra = { column = 'RA', unit = 'hourangle' }\ndec = 'DE'\nname = 1\nepoch = { value = 1991.25 }\n"
+        + "[columns]\nra = { column = 'RA', unit = 'hourangle' }\ndec = 'DE'\n"
+        + "name = 1\nepoch = { value = 1991.25 }\n"
         + "[targets]\nlayout = 'spaces'\nheader = false\nmissing = ['-']\n",
     )
     site, limits = read.site(), read.limits()
@@ -63,11 +64,13 @@ def test_only_the_site_is_needed(tmp_path: Path) -> None:
 
 def test_unknown_keys_name_the_nearest_and_the_line(tmp_path: Path) -> None:
     assert refused(tmp_path, SITE + "elevation = 3\n").endswith(
-        'plan.toml, line 6, [site]: unknown key "elevation"; known: longitude_deg, latitude_deg, height_m, name, '
-        "pressure_hpa, temperature_c, relative_humidity, wavelength_um, skyline"
+        'plan.toml, line 6, [site]: unknown key "elevation"; known: longitude_deg, latitude_deg, height_m, '
+        "name, pressure_hpa, temperature_c, relative_humidity, wavelength_um, skyline"
     )
     message = refused(tmp_path, SITE + "\n[limits]\n# a remark\naltitude_min = 30\n")
-    assert message.endswith('plan.toml, line 9, [limits]: unknown key "altitude_min"; did you mean "altitude_min_deg"?')
+    assert message.endswith(
+        'plan.toml, line 9, [limits]: unknown key "altitude_min"; did you mean "altitude_min_deg"?'
+    )
     message = refused(tmp_path, SITE + "[columns]\npm_ra = 'x'\n")
     assert 'line 7, [columns]: unknown key "pm_ra"; did you mean "pmra"?' in message
     message = refused(tmp_path, SITE + "[limit]\nairmass_max = 2\n")
@@ -101,10 +104,19 @@ def test_a_site_outside_the_earth(tmp_path: Path, key: str, value: str, allowed:
     ("text", "said"),
     [
         ("longitude_deg = 24.5\n", "[site]: latitude_deg is missing"),
-        ("longitude_deg = '24.5'\nlatitude_deg = 1\n", "line 2, [site]: longitude_deg is given '24.5'; a number is needed"),
+        (
+            "longitude_deg = '24.5'\nlatitude_deg = 1\n",
+            "line 2, [site]: longitude_deg is given '24.5'; a number is needed",
+        ),
         ("longitude_deg = true\nlatitude_deg = 1\n", "longitude_deg is given True; a number is needed"),
-        ("longitude_deg = 1\nlatitude_deg = 1\nname = 5\n", "line 4, [site]: name is given 5; a text is needed"),
-        ("longitude_deg = 1\nlatitude_deg = 1\nskyline = [1, 2]\n", "[azimuth, altitude] pairs in degrees is needed"),
+        (
+            "longitude_deg = 1\nlatitude_deg = 1\nname = 5\n",
+            "line 4, [site]: name is given 5; a text is needed",
+        ),
+        (
+            "longitude_deg = 1\nlatitude_deg = 1\nskyline = [1, 2]\n",
+            "[azimuth, altitude] pairs in degrees is needed",
+        ),
         ("longitude_deg = 1\nlatitude_deg = nan\n", "latitude_deg"),
     ],
 )
@@ -115,7 +127,10 @@ def test_wrong_values_in_the_site(tmp_path: Path, text: str, said: str) -> None:
 @pytest.mark.parametrize(
     ("text", "said"),
     [
-        ("altitude_min_deg = 95", "line 7, [limits]: Limits: altitude_min_deg: given 95, allowed -5 to 90 deg"),
+        (
+            "altitude_min_deg = 95",
+            "line 7, [limits]: Limits: altitude_min_deg: given 95, allowed -5 to 90 deg",
+        ),
         ("airmass_max = 0.5", "airmass_max: given 0.5, allowed 1 to 40"),
         ("airmass_max = '2'", "airmass_max: given '2'"),
         ("sun_altitude_max_deg = 'nautic'", "the nearest is 'nautical'"),

@@ -1,4 +1,4 @@
-"""Result files: that they read back in other programs, say where they came from, and appear whole or not at all."""
+"""Result files: they read back elsewhere, say where they came from, and appear whole or not at all."""
 
 from __future__ import annotations
 
@@ -51,11 +51,18 @@ def windows_of() -> hourarc.Windows:
 
 def record_of(folder: Path, limits: str = "") -> dict[str, object]:
     path = folder / "plan.toml"
-    path.write_text(f"[site]\nname = 'Saltpan Ridge'\nlongitude_deg = 24.5\nlatitude_deg = -20.9\n[limits]\n{limits}\n")
+    path.write_text(
+        f"[site]\nname = 'Saltpan Ridge'\nlongitude_deg = 24.5\nlatitude_deg = -20.9\n[limits]\n{limits}\n"
+    )
     plan = read_plan(path)
     called = command_line("night", "a plan.toml", "t.csv", "--night", "2026-03-10")
     return provenance(
-        plan=plan, site=plan.site(), limits=plan.limits(), targets=targets_of(folder), command=called, night="2026-03-10"
+        plan=plan,
+        site=plan.site(),
+        limits=plan.limits(),
+        targets=targets_of(folder),
+        command=called,
+        night="2026-03-10",
     )
 
 
@@ -74,7 +81,9 @@ def test_tables_join_windows_with_their_targets(tmp_path: Path) -> None:
     assert table["start_reason"].to_pylist() == ["sun_altitude_max", "altitude_min", "altitude_min"]
     assert table.schema.field("duration_s").metadata[b"unit"] == b"s"
     blocked = blocked_table(windows_of(), targets)
-    assert blocked.to_pylist() == [{"row": 2, "name": 'B, the "second"', "blocked_by": "altitude_min", "status": "ok"}]
+    assert blocked.to_pylist() == [
+        {"row": 2, "name": 'B, the "second"', "blocked_by": "altitude_min", "status": "ok"}
+    ]
 
 
 def test_rows_that_only_the_engine_finds_bad_are_rejected(tmp_path: Path) -> None:
@@ -122,7 +131,9 @@ def test_ecsv_reads_back_with_astropy(tmp_path: Path) -> None:
     assert read["start"].description and read["start"].meta["ucd"]
     assert read.meta["hourarc.site"]["name"] == "Saltpan Ridge"
     assert read.meta["hourarc.night"] == "2026-03-10"
-    blocked = table.read(written(tmp_path, "b.ecsv", blocked_table(windows_of(), targets_of(tmp_path))), format="ascii.ecsv")
+    blocked = table.read(
+        written(tmp_path, "b.ecsv", blocked_table(windows_of(), targets_of(tmp_path))), format="ascii.ecsv"
+    )
     assert blocked["name"][0] == 'B, the "second"'
 
 
@@ -152,7 +163,13 @@ def test_rejected_rows_as_csv(tmp_path: Path) -> None:
     lines = (tmp_path / "r.csv").read_text().splitlines()
     assert lines[0] == "# hourarc.software: hourarc"
     (row,) = csv.DictReader(lines[1:])
-    assert row == {"row": "7", "name": 'B, "x"', "column": "dec", "value": "91", "reason": "outside -90 to 90 deg"}
+    assert row == {
+        "row": "7",
+        "name": 'B, "x"',
+        "column": "dec",
+        "value": "91",
+        "reason": "outside -90 to 90 deg",
+    }
 
 
 def test_files_appear_whole_or_not_at_all(tmp_path: Path) -> None:

@@ -93,7 +93,11 @@ def find_columns(
 
 def _by_plan(key: str, spec: ColumnSpec, names: list[str], units: Mapping[str, str], source: str) -> Found:
     if spec.column is None:
-        unit = unit_for(FIELDS[key], spec.unit, f"{source}: [columns] {key}") if spec.unit and key in FIELDS else ""
+        unit = (
+            unit_for(FIELDS[key], spec.unit, f"{source}: [columns] {key}")
+            if spec.unit and key in FIELDS
+            else ""
+        )
         return Found(None, unit or (FIELDS[key].unit if key in FIELDS else ""), True, True, spec.value)
     name = locate(spec.column, names, f"[columns] {key}", source)
     if key not in FIELDS:
