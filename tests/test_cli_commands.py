@@ -7,7 +7,6 @@ import json
 import os
 import subprocess
 import sys
-import time
 from pathlib import Path
 
 import numpy as np
@@ -328,11 +327,14 @@ def test_demo_targets_are_the_same_everywhere() -> None:
 
 
 def test_help_is_quick_and_whole() -> None:
+    # The processor's time, not the wall's: other work on the machine must not decide this test.
+    resource = pytest.importorskip("resource")
     took = []
     for _ in range(3):
-        start = time.perf_counter()
+        before = resource.getrusage(resource.RUSAGE_CHILDREN)
         done = process("--help")
-        took.append(time.perf_counter() - start)
+        after = resource.getrusage(resource.RUSAGE_CHILDREN)
+        took.append(after.ru_utime + after.ru_stime - before.ru_utime - before.ru_stime)
         assert done.returncode == 0 and done.stderr == ""
     for word in ("night", "almanac", "demo", "--version", "Exit codes", "interlock"):
         assert word in done.stdout

@@ -9,7 +9,7 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
-from .problems import WrongInput, nearest
+from .problems import WrongInput
 
 #: Each kind of quantity: the factor from a unit to the unit used inside (degrees, mas/yr, mas, km/s).
 _UNITS: dict[str, dict[str, float]] = {
@@ -254,7 +254,7 @@ def unit_for(field: Field, text: str, where: str) -> str:
             if field.key == "dec"
             else list(known)
         )
-        raise WrongInput(f'{where}: {field.key} cannot be in "{text}"; {nearest(text, can)}')
+        raise WrongInput(f'{where}: {field.key} cannot be in "{text}"; known: {", ".join(can)}')
     if field.key == "dec" and unit == "hourangle":
         raise WrongInput(
             f"{where}: a declination is never in hours; known: deg, rad, arcmin, arcsec, mas, dms"
