@@ -1,0 +1,68 @@
+"""Hourarc: when can this telescope observe each of very many targets?
+
+Angles are degrees and names end in their unit. Times are UTC: numpy datetime64, ISO strings, datetimes or
+astropy Times; results are datetime64[ns]. Results are small frozen objects with plain numpy columns.
+
+    import hourarc as ha
+    site = ha.Site(-70.4, -24.6, 2635.0, name="Saltpan Ridge")
+    stars = ha.Catalog([83.8, 201.3], [-5.4, -43.0])
+    found = ha.windows(site, stars, "2026-03-10T16:00", "2026-03-11T16:00", ha.Limits(airmass_max=1.8))
+
+Pointing at or near the Sun can blind a person and destroy an instrument: the Sun limit here is for planning
+and is never the interlock. Not for navigation, aviation, or legal time.
+"""
+
+from __future__ import annotations
+
+from . import _engine, earth, errors
+from .almanac import Almanac, almanac
+from .earth import Orientation
+from .errors import HourarcError, HourarcWarning
+from .events import Event, Events, rise_transit_set
+from .geometry import position_angle, separation
+from .limits import LIMITS, Limits
+from .place import PLACE_COLUMNS, Places, place
+from .results import STATUS_WORDS
+from .site import Site
+from .targets import Bodies, Catalog
+from .windows import REASON_WORDS, Window, Windows, windows
+
+__version__: str = _engine.version
+
+__all__ = [
+    "LIMITS",
+    "PLACE_COLUMNS",
+    "REASON_WORDS",
+    "STATUS_WORDS",
+    "Almanac",
+    "Bodies",
+    "Catalog",
+    "Event",
+    "Events",
+    "HourarcError",
+    "HourarcWarning",
+    "Limits",
+    "Orientation",
+    "Places",
+    "Site",
+    "Window",
+    "Windows",
+    "__version__",
+    "almanac",
+    "earth",
+    "errors",
+    "place",
+    "position_angle",
+    "rise_transit_set",
+    "separation",
+    "windows",
+]
+
+if _engine.debug_build:
+    import warnings
+
+    warnings.warn(
+        "hourarc's extension is a debug build: its answers are right, its speed is not",
+        errors.DebugBuildWarning,
+        stacklevel=2,
+    )

@@ -1,0 +1,115 @@
+"""The compiled engine, as the package sees it. Not public: use the nouns and verbs of `hourarc`.
+
+Arrays are one-dimensional and C-contiguous unless said. Instants are int64 nanoseconds of UTC since 1970,
+a datetime64[ns] viewed; NaT is the least int64. `threads` 0 means all cores. A test holds this file and the
+binary together.
+"""
+
+from typing import Any, final
+
+import numpy as np
+from numpy.typing import NDArray
+
+_Floats = NDArray[np.float64]
+_Nanoseconds = NDArray[np.int64]
+_Bytes = NDArray[np.uint8]
+
+version: str
+debug_build: bool
+
+@final
+class Site:
+    def __new__(
+        cls,
+        longitude_deg: float,
+        latitude_deg: float,
+        height_m: float,
+        pressure_hpa: float | None,
+        temperature_c: float,
+        relative_humidity: float,
+        wavelength_um: float,
+        skyline_azimuth_deg: _Floats | None,
+        skyline_altitude_deg: _Floats | None,
+    ) -> Site: ...
+    @property
+    def pressure_hpa(self) -> float: ...
+    @property
+    def lowest_altitude_deg(self) -> float: ...
+    @property
+    def horizon_dip_deg(self) -> float: ...
+
+@final
+class Catalog:
+    def __new__(
+        cls,
+        ra_deg: _Floats,
+        dec_deg: _Floats,
+        epoch_yr: _Floats,
+        pm_ra_mas_yr: _Floats,
+        pm_dec_mas_yr: _Floats,
+        parallax_mas: _Floats,
+        radial_velocity_km_s: _Floats,
+    ) -> Catalog: ...
+    def __len__(self) -> int: ...
+    @property
+    def status(self) -> _Bytes: ...
+
+@final
+class Bodies:
+    def __new__(cls, words: list[str]) -> Bodies: ...
+    def __len__(self) -> int: ...
+
+@final
+class Orientation:
+    @staticmethod
+    def tables(leap_seconds: str, c04: str | None, finals: str | None) -> Orientation: ...
+    @staticmethod
+    def constant(
+        leap_seconds: str, dut1_s: float, xp_arcsec: float, yp_arcsec: float, dx_mas: float, dy_mas: float
+    ) -> Orientation: ...
+    def at(self, utc_ns: _Nanoseconds) -> dict[str, NDArray[Any]]: ...
+    def provenance(self) -> dict[str, float | None]: ...
+
+def place(
+    site: Site,
+    targets: Catalog | Bodies,
+    orientation: Orientation,
+    utc_ns: _Nanoseconds,
+    columns: dict[str, _Floats],
+    status: _Bytes,
+    pairwise: bool,
+    threads: int,
+) -> None: ...
+def rise_transit_set(
+    site: Site,
+    targets: Catalog | Bodies,
+    orientation: Orientation,
+    start_ns: int,
+    stop_ns: int,
+    altitude_deg: _Floats,
+    threads: int,
+) -> dict[str, NDArray[Any]]: ...
+def almanac(site: Site, orientation: Orientation, first_mjd: int, nights: int) -> dict[str, NDArray[Any]]: ...
+def windows(
+    site: Site,
+    targets: Catalog | Bodies,
+    orientation: Orientation,
+    start_ns: int,
+    stop_ns: int,
+    limits: dict[str, _Floats | str],
+    threads: int,
+) -> dict[str, NDArray[Any]]: ...
+def rotation_angle(ut1_mjd: _Floats, ut1_fraction: _Floats) -> _Floats: ...
+def sidereal_time(
+    ut1_mjd: _Floats, ut1_fraction: _Floats, tt_mjd: _Floats, tt_fraction: _Floats, apparent: bool
+) -> _Floats: ...
+def precession_nutation(tt_mjd: _Floats, tt_fraction: _Floats) -> _Floats: ...
+def bias_precession_nutation(tt_mjd: _Floats, tt_fraction: _Floats) -> _Floats: ...
+def separation(lon1_deg: _Floats, lat1_deg: _Floats, lon2_deg: _Floats, lat2_deg: _Floats) -> _Floats: ...
+def position_angle(lon1_deg: _Floats, lat1_deg: _Floats, lon2_deg: _Floats, lat2_deg: _Floats) -> _Floats: ...
+def reason_words() -> list[str]: ...
+def status_words() -> dict[int, str]: ...
+def event_status_words() -> dict[int, str]: ...
+def body_words() -> list[str]: ...
+def airmass_model_words() -> list[str]: ...
+def instruction_set() -> str: ...

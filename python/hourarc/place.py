@@ -1,0 +1,247 @@
+"""Where is it: places of targets at instants."""
+
+from __future__ import annotations
+
+from collections.abc import Iterable, Mapping
+from typing import Any
+
+import numpy as np
+from numpy.typing import NDArray
+
+from . import _engine
+from ._columns import Floats, thread_count
+from .errors import InvalidArgument, MissingColumn, UnknownName, WrongType
+from .orientation import Orientation, as_orientation
+from .results import STATUS_WORDS, Coded, ColumnResult, words
+from .site import Site, as_site
+from .targets import Bodies, Catalog, as_targets
+from .times import from_nanoseconds, to_nanoseconds
+
+__all__ = ["PLACE_COLUMNS", "Places", "place"]
+
+DEFAULT_COLUMNS = (
+    "altitude_deg",
+    "azimuth_deg",
+    "hour_angle_deg",
+    "declination_deg",
+    "airmass",
+    "parallactic_angle_deg",
+)
+PLACE_COLUMNS = (*DEFAULT_COLUMNS, "moon_separation_deg", "sun_separation_deg")
+"""Every column that `place` can compute; the first six are computed when nothing is said."""
+
+
+class Places(ColumnResult):
+    """Places of targets. Columns have shape (times, targets); (targets,) for a scalar time; (n,) pairwise.
+
+    Only the columns that were asked for are there; another one raises `MissingColumn`.
+    """
+
+    __slots__ = ("_columns", "name", "pairwise", "status", "time")
+
+    altitude_deg: Floats
+    """Observed altitude, degrees."""
+    azimuth_deg: Floats
+    """Azimuth, degrees from north through east, 0 to 360."""
+    hour_angle_deg: Floats
+    """Topocentric hour angle, degrees, -180 to 180, west positive."""
+    declination_deg: Floats
+    """Topocentric declination of date (CIRS), degrees."""
+    airmass: Floats
+    """Airmass; NaN below the horizon."""
+    parallactic_angle_deg: Floats
+    """Parallactic angle, degrees, -180 to 180, positive in the west."""
+    moon_separation_deg: Floats
+    """Angle to the centre of the Moon, degrees."""
+    sun_separation_deg: Floats
+    """Angle to the centre of the Sun, degrees."""
+    time: NDArray[np.datetime64]
+    """The instants, UTC, datetime64[ns], in the shape they were given."""
+    status: NDArray[np.uint8]
+    """Status of each place, in the shape of the columns; from 16 on there is none."""
+    name: NDArray[np.str_] | None
+    """The names of the targets, or None."""
+    pairwise: bool
+    """Whether row i is target i at time i."""
+    _columns: Mapping[str, Floats]
+
+    def __init__(
+        self,
+        columns: Mapping[str, Floats],
+        status: NDArray[np.uint8],
+        time: NDArray[np.datetime64],
+        name: NDArray[np.str_] | None,
+        pairwise: bool,
+    ) -> None:
+        given = {"_columns": columns, "status": status, "time": time, "name": name, "pairwise": pairwise}
+        for key, value in given.items():
+            object.__setattr__(self, key, value)
+
+    def __getattr__(self, attribute: str) -> Any:
+        if attribute in PLACE_COLUMNS:
+            if attribute in self._columns:
+                return self._columns[attribute]
+            raise MissingColumn(
+                f"Places: {attribute} was not computed; name it in place(columns=...). "
+                f"Computed: {', '.join(self.columns)}"
+            )
+        raise AttributeError(f"Places has no attribute {attribute!r}")
+
+    def __getitem__(self, column: str) -> Floats:
+        """A column by its name."""
+        if column not in PLACE_COLUMNS:
+            raise UnknownName.among("Places: column", column, PLACE_COLUMNS)
+        values: Floats = getattr(self, column)
+        return values
+
+    @property
+    def columns(self) -> tuple[str, ...]:
+        """The names of the columns that were computed."""
+        return tuple(self._columns)
+
+    @property
+    def shape(self) -> tuple[int, ...]:
+        """The shape of every column."""
+        return self.status.shape
+
+    @property
+    def status_words(self) -> NDArray[np.str_]:
+        """The status of each place as a word."""
+        return words(self.status, STATUS_WORDS)
+
+    def __reduce__(self) -> tuple[Any, ...]:
+        return Places, (dict(self._columns), self.status, self.time, self.name, self.pairwise)
+
+    def __setattr__(self, attribute: str, value: object) -> None:
+        raise AttributeError(f"Places: {attribute} cannot be set; a result does not change")
+
+    def _table(self) -> dict[str, Any]:
+        rows = self.status.size
+        if self.pairwise:
+            target = np.arange(rows, dtype=np.int64)
+            time = self.time.reshape(-1)
+        else:
+            times = max(self.time.size, 1)
+            target = np.tile(np.arange(rows // times, dtype=np.int64), times)
+            time = np.repeat(self.time.reshape(-1), rows // times)
+        columns: dict[str, Any] = {"time": time, "target": target}
+        if self.name is not None:
+            columns["name"] = self.name[target % max(len(self.name), 1)]
+        columns |= {key: value.reshape(-1) for key, value in self._columns.items()}
+        columns["status"] = Coded(self.status.reshape(-1), STATUS_WORDS)
+        return columns
+
+    def _heading(self) -> str:
+        shape = " x ".join(f"{size:,}" for size in self.shape)
+        kind = "pairwise" if self.pairwise else ("targets" if len(self.shape) == 1 else "times x targets")
+        return f"Places {shape} ({kind}): {', '.join(self.columns)}"
+
+
+def place(
+    site: Site,
+    targets: Catalog | Bodies,
+    when: Any,
+    *,
+    columns: Iterable[str] | str | None = None,
+    pairwise: bool = False,
+    out: Places | Mapping[str, NDArray[Any]] | None = None,
+    orientation: Orientation | None = None,
+    threads: int | None = None,
+) -> Places:
+    """Where each target stands at each instant.
+
+    * ``when``: UTC: datetime64, ISO strings, datetimes or an astropy Time; a scalar, or one dimension.
+    * ``columns``: which to compute, of `PLACE_COLUMNS`; None is the first six of them.
+    * ``pairwise``: row i is target i at instant i, of which there are equally many.
+    * ``out``: a former `Places`, or writable float64 arrays by column name (and ``status``, uint8), of
+      the result's shape and C-contiguous: they are filled and no others are made.
+    * ``threads``: None for all cores. The answer is the same, bit for bit, for any number.
+    """
+    here, rows = as_site(site), as_targets(targets)
+    nanoseconds, time_shape = to_nanoseconds(when, "when")
+    if len(time_shape) > 1:
+        raise InvalidArgument.of(
+            "place: when", f"an array of shape {time_shape}", "a scalar or one dimension"
+        )
+    wanted = _wanted(columns)
+    earth = as_orientation(orientation)
+    earth.check(nanoseconds, "when")
+    shape = _shape(time_shape, len(rows), pairwise)
+    arrays, status = _outputs(out, wanted, shape)
+    flat = {key: array.reshape(-1) for key, array in arrays.items()}
+    _engine.place(
+        here._handle,
+        rows._handle,
+        earth._handle,
+        nanoseconds,
+        flat,
+        status.reshape(-1),
+        bool(pairwise),
+        thread_count(threads),
+    )
+    return Places(
+        arrays, status, from_nanoseconds(nanoseconds).reshape(time_shape), rows.name, bool(pairwise)
+    )
+
+
+def _wanted(columns: Iterable[str] | str | None) -> tuple[str, ...]:
+    if columns is None:
+        return DEFAULT_COLUMNS
+    named = (columns,) if isinstance(columns, str) else tuple(columns)
+    for name in named:
+        if name not in PLACE_COLUMNS:
+            raise UnknownName.among("place: columns", name, PLACE_COLUMNS)
+    if len(set(named)) != len(named):
+        raise InvalidArgument.of("place: columns", ", ".join(named), "each column once")
+    if not named:
+        raise InvalidArgument.of("place: columns", "none", "at least one, or None for the usual six")
+    return named
+
+
+def _shape(times: tuple[int, ...], targets: int, pairwise: bool) -> tuple[int, ...]:
+    if not pairwise:
+        return (*times, targets)
+    if times != (targets,):
+        given = f"{targets} targets at {times[0]} times" if times else f"{targets} targets at one time"
+        raise InvalidArgument.of("place: pairwise", given, "one time for each target")
+    return (targets,)
+
+
+def _outputs(
+    out: Places | Mapping[str, NDArray[Any]] | None, wanted: tuple[str, ...], shape: tuple[int, ...]
+) -> tuple[dict[str, Floats], NDArray[np.uint8]]:
+    """The arrays to fill: those of `out`, checked, or new ones."""
+    if out is None:
+        return {key: np.empty(shape) for key in wanted}, np.empty(shape, dtype=np.uint8)
+    if isinstance(out, Places):
+        given: dict[str, NDArray[Any]] = {**out._columns, "status": out.status}
+    elif isinstance(out, Mapping):
+        given = dict(out)
+    else:
+        raise WrongType.of("place: out", out, "a Places, or arrays by column name")
+    for key in given:
+        if key != "status" and key not in wanted:
+            if key not in PLACE_COLUMNS:
+                raise UnknownName.among("place: out", key, [*PLACE_COLUMNS, "status"])
+            raise InvalidArgument.of(
+                "place: out", f"{key}, which is not computed", f"columns {', '.join(wanted)}"
+            )
+    arrays = {key: _writable(given.get(key), key, shape, np.dtype(np.float64)) for key in wanted}
+    if "status" not in given:
+        return arrays, np.empty(shape, dtype=np.uint8)
+    return arrays, _writable(given["status"], "status", shape, np.dtype(np.uint8))
+
+
+def _writable(array: Any, name: str, shape: tuple[int, ...], dtype: np.dtype[Any]) -> NDArray[Any]:
+    allowed = f"a writable C-contiguous {dtype} array of shape {shape}"
+    where = f"place: out[{name!r}]"
+    if array is None:
+        raise InvalidArgument.of(where, "nothing", allowed)
+    if not isinstance(array, np.ndarray):
+        raise WrongType.of(where, array, allowed)
+    if array.shape != shape or array.dtype != dtype:
+        raise InvalidArgument.of(where, f"{array.dtype} of shape {array.shape}", allowed)
+    if not array.flags.c_contiguous or not array.flags.writeable:
+        given = "a read-only array" if not array.flags.writeable else "an array that is not C-contiguous"
+        raise InvalidArgument.of(where, given, allowed)
+    return array

@@ -1,0 +1,190 @@
+"""When may I observe it: the windows in which all limits hold, and what opens and closes each."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+from dataclasses import dataclass
+from typing import TYPE_CHECKING, Any
+
+import numpy as np
+from numpy.typing import NDArray
+
+from . import _engine
+from ._columns import Floats, thread_count
+from .errors import WrongType
+from .limits import Limits
+from .orientation import Orientation, as_orientation
+from .results import STATUS_WORDS, Coded, ColumnResult, Ragged, arrow_table, words
+from .site import Site, as_site
+from .targets import Bodies, Catalog, as_targets
+from .times import from_nanoseconds, span
+
+if TYPE_CHECKING:
+    import pyarrow
+
+__all__ = ["REASON_WORDS", "Window", "Windows", "windows"]
+
+REASON_WORDS: tuple[str, ...] = tuple(_engine.reason_words())
+"""The word for each code of `start_reason`, `stop_reason` and `blocked_by`."""
+
+
+@dataclass(frozen=True, slots=True)
+class Window:
+    """One half-open interval [start, stop) in which all limits hold."""
+
+    start: np.datetime64
+    stop: np.datetime64
+    start_reason: str
+    stop_reason: str
+    best_airmass: float
+    best_time: np.datetime64
+
+
+@dataclass(frozen=True, slots=True, repr=False)
+class Windows(Ragged, ColumnResult):
+    """The windows of many targets, in order of time within each.
+
+    Rows `offsets[i]` to `offsets[i + 1]` are those of target i; `of(i)` gives them one by one. A target
+    without a window says in `blocked_by` which limit leaves it none.
+    """
+
+    offsets: NDArray[np.int64]
+    """Where each target's rows begin, shape (targets + 1,)."""
+    start: NDArray[np.datetime64]
+    """First instant of the window, UTC, datetime64[ns], shape (windows,)."""
+    stop: NDArray[np.datetime64]
+    """First instant after it."""
+    start_reason: NDArray[np.uint8]
+    """The limit that opens it, as a code of `REASON_WORDS`."""
+    stop_reason: NDArray[np.uint8]
+    """The limit that closes it, as a code of `REASON_WORDS`."""
+    best_airmass: Floats
+    """The least airmass within."""
+    best_time: NDArray[np.datetime64]
+    """When the airmass is least, UTC."""
+    status: NDArray[np.uint8]
+    """Status of each target, shape (targets,); from 16 on it is a bad row."""
+    blocked_by: NDArray[np.uint8]
+    """The limit that leaves a target no window, as a code of `REASON_WORDS`; 0 where it has one."""
+    name: NDArray[np.str_] | None
+    """The names of the targets, or None."""
+
+    @property
+    def start_reason_words(self) -> NDArray[np.str_]:
+        """The limit that opens each window, shape (windows,)."""
+        return words(self.start_reason, REASON_WORDS)
+
+    @property
+    def stop_reason_words(self) -> NDArray[np.str_]:
+        """The limit that closes each window, shape (windows,)."""
+        return words(self.stop_reason, REASON_WORDS)
+
+    @property
+    def blocked_by_words(self) -> NDArray[np.str_]:
+        """The limit that leaves each target no window, shape (targets,)."""
+        return words(self.blocked_by, REASON_WORDS)
+
+    @property
+    def status_words(self) -> NDArray[np.str_]:
+        """The status of each target, shape (targets,)."""
+        return words(self.status, STATUS_WORDS)
+
+    @property
+    def hours(self) -> Floats:
+        """The length of each target's windows together, hours, shape (targets,)."""
+        seconds = (self.stop - self.start) / np.timedelta64(1, "s")
+        return np.bincount(self.target, weights=seconds, minlength=len(self)) / 3600.0
+
+    @property
+    def blocked_counts(self) -> dict[str, int]:
+        """How many targets each limit leaves without a window, by its word."""
+        codes, counts = np.unique(self.blocked_by, return_counts=True)
+        return {
+            REASON_WORDS[code]: count
+            for code, count in zip(codes.tolist(), counts.tolist(), strict=True)
+            if code
+        }
+
+    def of(self, target: int) -> list[Window]:
+        """The windows of one target, by its row number."""
+        return self._windows(self.rows(target))
+
+    def __iter__(self) -> Iterator[list[Window]]:
+        """The windows of each target in turn."""
+        return map(self._windows, self._each())
+
+    def _windows(self, rows: slice) -> list[Window]:
+        opened = [REASON_WORDS[code] for code in self.start_reason[rows]]
+        closed = [REASON_WORDS[code] for code in self.stop_reason[rows]]
+        airmass = self.best_airmass[rows].tolist()
+        columns = (self.start[rows], self.stop[rows], opened, closed, airmass, self.best_time[rows])
+        return [Window(*fields) for fields in zip(*columns, strict=True)]
+
+    def targets_to_arrow(self) -> pyarrow.Table:
+        """One row a target: status, what blocks it, how many windows and hours it has."""
+        index = np.arange(len(self), dtype=np.int64)
+        named = {} if self.name is None else {"name": self.name}
+        return arrow_table(
+            {
+                "target": index,
+                **named,
+                "status": Coded(self.status, STATUS_WORDS),
+                "blocked_by": Coded(self.blocked_by, REASON_WORDS),
+                "window_count": self.counts,
+                "hours": self.hours,
+            }
+        )
+
+    def _table(self) -> dict[str, Any]:
+        target = self.target
+        named = {} if self.name is None else {"name": self.name[target]}
+        return {
+            "target": target,
+            **named,
+            "start": self.start,
+            "stop": self.stop,
+            "start_reason": Coded(self.start_reason, REASON_WORDS),
+            "stop_reason": Coded(self.stop_reason, REASON_WORDS),
+            "best_airmass": self.best_airmass,
+            "best_time": self.best_time,
+        }
+
+    def _heading(self) -> str:
+        having = int(np.count_nonzero(self.counts))
+        return f"Windows: {len(self.start):,} of {having:,} among {len(self):,} targets"
+
+
+def windows(
+    site: Site,
+    targets: Catalog | Bodies,
+    start: Any,
+    stop: Any,
+    limits: Limits | None = None,
+    *,
+    orientation: Orientation | None = None,
+    threads: int | None = None,
+) -> Windows:
+    """The windows of each target within the half-open span [start, stop): exact, with their reasons.
+
+    ``limits``: what must hold; None is ``Limits()``.
+    """
+    here, rows = as_site(site), as_targets(targets)
+    first, last = span(start, stop)
+    allowed = Limits() if limits is None else limits
+    if not isinstance(allowed, Limits):
+        raise WrongType.of(
+            "windows: limits", limits, "a Limits, such as Limits(altitude_min_deg=40), or None"
+        )
+    earth = as_orientation(orientation)
+    earth.check(np.array([first, last]), "start, stop")
+    made = _engine.windows(
+        here._handle,
+        rows._handle,
+        earth._handle,
+        first,
+        last,
+        allowed.for_engine(len(rows)),
+        thread_count(threads),
+    )
+    times = {key: from_nanoseconds(made[key]) for key in ("start", "stop", "best_time")}
+    return Windows(**{**made, **times}, name=rows.name)
