@@ -6,5 +6,6 @@ pub mod dispatch;
 pub mod elementary;
 mod elementary_coefficients;
 pub mod roots;
+pub mod sphere;
 pub mod spline;
 pub mod vector;
