@@ -28,7 +28,7 @@ class Observer:
 
 @dataclass(frozen=True)
 class Stars:
-    """Catalogue places in the units catalogues print: degrees, mas/yr (RA with cos δ), mas, km/s, Julian year."""
+    """Catalogue places in the units catalogues print: degrees, mas/yr (RA with cos δ), mas, km/s, years."""
 
     ra_deg: np.ndarray
     dec_deg: np.ndarray

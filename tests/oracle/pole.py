@@ -49,9 +49,9 @@ def _astropy_table(which):
 
 
 def table(which):
-    """`finals2000A` or `c04` as astropy reads it: dict of MJD, UT1−UTC (s), xp, yp (″), dX, dY (mas), measured.
+    """`finals2000A` (its Bulletin A columns) or `c04` as astropy reads it: a dict of columns.
 
-    finals2000A carries both Bulletin A and B; the B column is what astropy prefers where it is printed.
+    mjd, dut1_s (UT1−UTC), xp_arcsec, yp_arcsec, dx_mas, dy_mas; NaN where nothing is printed.
     """
     rows = _astropy_table(which)
     mjd = np.array(rows["MJD"].value, dtype=float)

@@ -48,7 +48,7 @@ def position(body, tdb):
 
 
 def light_time(body, tdb, observer):
-    """Where the body was when the light left that reaches `observer` (au) now: (position, light time in days)."""
+    """Where the body was when the light left that reaches `observer` (au) now, and the delay in days."""
     day, fraction = tdb
     delay = 0.0
     for _ in range(4):

@@ -1,0 +1,132 @@
+"""Observing windows, against brute force: all limits each 10 s through the night, the edges bisected."""
+
+import hourarc
+import numpy as np
+import pytest
+from bridge import TablePole, catalog, nanoseconds, random_directions, site, windows_of
+from oracle import clock, windows
+from oracle.place import Observer, Stars
+
+SHORT_NS = (
+    25_000_000_000  # a window (or gap) the sampling may pass over: none such is expected with these seeds
+)
+
+NIGHTS = [
+    # observer, noon before the night, stars, limits that both sides know
+    (
+        Observer(-70.4, -24.6, 2635.0),
+        "2026-03-08T16:41",
+        120,
+        {"altitude_min_deg": 30.0, "sun_altitude_max_deg": -18.0, "moon_separation_min_deg": 40.0},
+    ),
+    (
+        Observer(-17.9, 28.8, 2390.0),
+        "2025-10-05T13:11",
+        120,
+        {
+            "altitude_min_deg": 20.0,
+            "altitude_max_deg": 80.0,
+            "sun_altitude_max_deg": -12.0,
+            "sun_separation_min_deg": 60.0,
+            "moon_separation_min_deg": 25.0,
+        },
+    ),
+    (
+        Observer(25.7, 69.9, 400.0),
+        "2025-09-20T10:17",
+        100,
+        {"altitude_min_deg": 25.0, "sun_altitude_max_deg": -6.0, "sun_separation_min_deg": 45.0},
+    ),
+    (
+        Observer(110.5, -66.3, 40.0),
+        "2024-04-20T04:38",
+        100,
+        {"altitude_min_deg": 40.0, "sun_altitude_max_deg": -18.0, "moon_altitude_max_deg": 0.0},
+    ),
+]
+
+
+@pytest.fixture(scope="module")
+def nights():
+    rng, pole, out = np.random.default_rng(7), TablePole(), []
+    for observer, noon, count, limits in NIGHTS:
+        stars = Stars(*random_directions(rng, count))
+        start = int(clock.nanoseconds(noon))
+        stop = start + clock.DAY_NS
+        both = {"sun_separation_min_deg": 30.0} | limits  # the Sun limit is on by default
+        ours = hourarc.windows(
+            site(observer), catalog(stars), *clock.datetime([start, stop]), hourarc.Limits(**limits)
+        )
+        margins = windows.Margins(**both)
+        theirs = windows.windows(observer, pole, stars, start, stop, margins, step_s=20.0)
+        out.append((observer, stars, margins, ours, theirs))
+    return out
+
+
+def test_windows_against_brute_force(figures, nights):
+    worst, edges, used = 0.0, 0, set()
+    for observer, stars, _, ours, theirs in nights:
+        for target in range(len(stars)):
+            mine = windows_of(ours, target)
+            want = [w for w in theirs if w.target == target]
+            where = f"{observer}, star {target}: {mine}, brute force {want}"
+            assert len(mine) == len(want), where
+            for (start, stop, opens, closes), other in zip(mine, want, strict=True):
+                assert (opens, closes) == (other.start_reason, other.stop_reason), where
+                worst = max(worst, abs(start - other.start_ns) * 1e-6, abs(stop - other.stop_ns) * 1e-6)
+                edges += 2
+                used |= {opens, closes}
+    print(edges, f"edges, worst {worst:.4f} ms; reasons seen: {sorted(used)}")
+    assert {"altitude_min", "altitude_max", "sun_altitude_max", "moon_separation_min"} <= used
+    assert {"sun_separation_min", "moon_altitude_max"} & used
+    figures.hold("window_edges", worst, edges)
+
+
+def test_what_blocks_a_star_without_a_window(nights):
+    # A limit that blocks must be one that alone leaves nothing, where there is such a one.
+    count = 0
+    pole = TablePole()
+    from bridge import reasons
+    from oracle.place import Sky
+    from oracle.roots import grid_times
+
+    for number, (observer, stars, margins, ours, _) in enumerate(nights):
+        start = int(clock.nanoseconds(NIGHTS[number][1]))
+        times = grid_times(start, start + clock.DAY_NS, 300.0)
+        sky = Sky(observer, times, pole)
+        values = margins.evaluate(sky, sky.stars(stars), slice(None))
+        empty = np.diff(ours.offsets) == 0
+        blocked = reasons(ours.blocked_by)
+        for target in range(len(stars)):
+            if not empty[target]:
+                assert blocked[target] == "none"
+                continue
+            alone = {name for name, value in values.items() if value[:, target].max() < -0.5}
+            assert blocked[target] in (alone or set(values)), (target, blocked[target], alone)
+            count += 1
+    assert count > 40
+
+
+def test_best_airmass_is_at_the_highest_altitude(nights):
+    pole, count = TablePole(), 0
+    from oracle.place import Sky
+
+    for observer, stars, _, ours, _ in nights:
+        for target in range(0, len(stars), 10):
+            rows = slice(int(ours.offsets[target]), int(ours.offsets[target + 1]))
+            star = stars.take([target])
+            for start, stop, best, airmass in zip(
+                nanoseconds(ours.start[rows]),
+                nanoseconds(ours.stop[rows]),
+                nanoseconds(ours.best_time[rows]),
+                ours.best_airmass[rows],
+                strict=True,
+            ):
+                assert start <= best <= stop
+                times = np.append(np.linspace(0, stop - start, 200).astype(np.int64) + start, best)
+                altitude = np.degrees(Sky(observer, times, pole).stars(star).altitude[:, 0])
+                assert altitude[-1] >= altitude.max() - 1e-3
+                # Every published formula is within 1 % of the secant above 15°.
+                assert airmass == pytest.approx(1.0 / np.sin(np.radians(altitude[-1])), rel=0.01)
+                count += 1
+    assert count > 15
