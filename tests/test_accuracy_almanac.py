@@ -107,7 +107,7 @@ def test_night_is_from_local_mean_noon_to_noon(almanacs):
 
 
 def geocentric_ecliptic(body, utc):
-    """Apparent geocentric longitude and latitude of date (rad), and the geometric vector from the Earth (au)."""
+    """Apparent geocentric longitude and latitude of date (rad), and where it is from the Earth (au)."""
     tdb = clock.tdb(utc)
     earth, velocity = solar_system.state("earth", tdb)
     there, _ = solar_system.light_time(body, tdb, earth)

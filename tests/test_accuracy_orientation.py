@@ -18,7 +18,7 @@ def midnight_ns(mjd):
 
 @pytest.fixture(scope="module")
 def rows():
-    """Measured days of C04, and of finals2000A from where C04 ends: each knot with the values printed for it."""
+    """The days of C04, and those of finals2000A from where C04 ends, with the values printed for them."""
     c04, finals = table("c04"), table("finals2000A")
     later = finals["mjd"] > c04["mjd"][-1]
     return {key: np.concatenate([c04[key], finals[key][later]]) for key in c04}
@@ -39,7 +39,7 @@ def test_orientation_is_the_tables_at_its_knots(figures, rows):
 
 def test_orientation_between_the_knots_is_smooth(rows):
     # Between two days a cubic through the table stays by the straight line: within half of the largest second
-    # difference nearby (an eighth for a parabola; more where a value is noisy). Leap seconds are taken out first.
+    # difference nearby (an eighth for a parabola; more where a value is noisy). Leap seconds are out first.
     middle = midnight_ns(rows["mjd"]) + clock.DAY_NS // 2
     leap = clock.tai_minus_utc_s(midnight_ns(rows["mjd"]))
     ours = hourarc.earth.Orientation.packaged().at(clock.datetime(middle))

@@ -93,7 +93,7 @@ def test_hour_angle_declination_and_parallactic_angle(cases):
     # About the terrestrial pole: a rotation about the pole moves a star by cos δ of the hour angle.
     off = np.angle(np.exp(1j * (np.radians(ours["hour_angle_deg"]) - theirs.hour_angle)))
     assert np.abs(off * np.cos(theirs.declination)).max() * MICROARCSECONDS < 2.0
-    # The parallactic angle is asked for to 1″ on the sky only: which pole of date it refers to moves it by 0.5″.
+    # The parallactic angle is held to 1″ on the sky: which pole of date it refers to moves it by 0.5″.
     hour_angle, latitude = theirs.hour_angle, np.radians(observer.latitude_deg)
     q = erfa.hd2pa(hour_angle, theirs.declination, latitude)
     off = np.angle(np.exp(1j * (np.radians(ours["parallactic_angle_deg"]) - q)))
@@ -114,7 +114,7 @@ def test_barnards_star_a_century_from_its_epoch():
 
 
 def test_a_star_behind_the_sun_has_a_place():
-    # Within 5° no accuracy is promised, but the place is finite and no further off than the deflection at the limb.
+    # Within 5° no accuracy is promised, but the place is finite and off by less than the limb deflects.
     utc = clock.nanoseconds("2026-03-10T12:00")
     sun = -erfa.epv00(clock.tdb(utc)[0], clock.tdb(utc)[1])[0]["p"]
     ra, dec = erfa.c2s(sun)

@@ -40,8 +40,8 @@ def test_sofa_astrometry_example():
     assert abs(np.degrees(observed.azimuth[0]) - 91.39161345) < 0.6e-8
     assert abs(90.0 - np.degrees(observed.altitude[0]) - 42.75004127) < 0.6e-8
     assert abs(np.degrees(observed.hour_angle[0]) + 44.05037452) < 0.6e-8
-    # The published "CIRS topocentric" place is referred to the terrestrial pole, and was made from the geocentric
-    # one: without this star's diurnal parallax, which is up to 165 mas / 23,455 = 7 µas.
+    # The published "CIRS topocentric" place is referred to the terrestrial pole, and was made from the
+    # geocentric one: without this star's diurnal parallax, which is up to 165 mas / 23,455 = 7 µas.
     sky = Sky(SOFA_SITE, SOFA_UTC, pole, feed="series")
     local = sky.stars(SOFA_STAR)
     _, _, _, dec, ra = erfa.atioq(local.right_ascension, local.declination, sky.context)

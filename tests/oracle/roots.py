@@ -37,7 +37,8 @@ def _extremum(pairs, low, high, column, sign):
 def sign_changes(grid, pairs, times, *, values=None):
     """All roots, the columns they belong to and their direction (+1 upward, −1 downward).
 
-    Sorted by column and time. Between samples an extremum that comes near zero is sought out, so that a graze is not missed.
+    Sorted by column and time. Between samples an extremum that comes near zero is sought out, so that a
+    graze is not missed.
     """
     values = grid(times) if values is None else values
     rows, columns = np.nonzero((values[:-1] > 0.0) != (values[1:] > 0.0))
