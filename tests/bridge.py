@@ -89,3 +89,21 @@ def reasons(codes):
 def status_word(result, target=0):
     """The status of one target of a result as a word."""
     return str(result.status_words[target])
+
+
+def altitude_pairs(site_with_air, *, lowest_deg=-2.0, count=40_000):
+    """Topocentric and observed altitudes, degrees, ascending, with the airmass, as our place gives them.
+
+    For a site whose air is to be measured: the same stars with and without its refraction.
+    """
+    rng = np.random.default_rng(34)
+    stars = hourarc.Catalog(*random_directions(rng, count))
+    bare = hourarc.Site(
+        site_with_air.longitude_deg, site_with_air.latitude_deg, site_with_air.height_m, pressure_hpa=0.0
+    )
+    when = np.datetime64("2026-03-10T00:00:00")
+    topocentric = hourarc.place(bare, stars, when, columns=("altitude_deg",)).altitude_deg
+    observed = hourarc.place(site_with_air, stars, when, columns=("altitude_deg", "airmass"))
+    keep = np.nonzero(topocentric > lowest_deg)[0]
+    keep = keep[np.argsort(topocentric[keep])]
+    return topocentric[keep], observed.altitude_deg[keep], observed.airmass[keep]

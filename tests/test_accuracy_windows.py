@@ -16,13 +16,13 @@ NIGHTS = [
     (
         Observer(-70.4, -24.6, 2635.0),
         "2026-03-08T16:41",
-        120,
+        400,
         {"altitude_min_deg": 30.0, "sun_altitude_max_deg": -18.0, "moon_separation_min_deg": 40.0},
     ),
     (
         Observer(-17.9, 28.8, 2390.0),
         "2025-10-05T13:11",
-        120,
+        400,
         {
             "altitude_min_deg": 20.0,
             "altitude_max_deg": 80.0,
@@ -34,13 +34,13 @@ NIGHTS = [
     (
         Observer(25.7, 69.9, 400.0),
         "2025-09-20T10:17",
-        100,
+        300,
         {"altitude_min_deg": 25.0, "sun_altitude_max_deg": -6.0, "sun_separation_min_deg": 45.0},
     ),
     (
         Observer(110.5, -66.3, 40.0),
         "2024-04-20T04:38",
-        100,
+        300,
         {"altitude_min_deg": 40.0, "sun_altitude_max_deg": -18.0, "moon_altitude_max_deg": 0.0},
     ),
 ]
@@ -58,7 +58,7 @@ def nights():
             site(observer), catalog(stars), *clock.datetime([start, stop]), hourarc.Limits(**limits)
         )
         margins = windows.Margins(**both)
-        theirs = windows.windows(observer, pole, stars, start, stop, margins, step_s=20.0)
+        theirs = windows.windows(observer, pole, stars, start, stop, margins, step_s=10.0)
         out.append((observer, stars, margins, ours, theirs))
     return out
 
