@@ -92,7 +92,7 @@ def test_refraction_grows_with_pressure_and_falls_with_heat():
 
 @pytest.mark.parametrize(
     ("model", "zenith_distance", "published", "apparent"),
-    # check-values: apparent altitude for Kasten & Young (1989) and Pickering (2002), true for Young (1994).
+    # apparent altitude for Kasten & Young (1989) and Pickering (2002), true for Young (1994).
     [
         ("kasten_young_1989", (60, 75, 85, 90), (1.9943, 3.8129, 10.3058, 37.9196), True),
         ("young_1994", (60, 75, 85, 90), (1.9917, 3.7964, 10.0587, 31.7349), False),
@@ -100,7 +100,7 @@ def test_refraction_grows_with_pressure_and_falls_with_heat():
     ],
 )
 def test_airmass_models_end_a_window_where_they_say(model, zenith_distance, published, apparent):
-    # A window limited by airmass_max closes where the altitude is the published one, in the model's own sense.
+    # A window limited by airmass_max closes where the altitude is the published one, in the model's sense.
     site = hourarc.Site(0.0, 0.0, 0.0)
     topocentric, observed, _ = altitude_pairs(site)
     star = hourarc.Catalog([100.0], [0.0])

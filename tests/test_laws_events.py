@@ -1,5 +1,7 @@
 """Laws that rises, transits and sets obey."""
 
+from itertools import pairwise
+
 import hourarc
 import numpy as np
 import pytest
@@ -43,7 +45,7 @@ def test_altitude_at_a_crossing_is_the_threshold(site, stars, altitude):
 
 
 def test_altitude_at_a_transit_is_that_of_the_meridian(stars):
-    # 90° − |φ − δ| at upper transit (check-values: facts of the trade); and the hour angle is zero.
+    # 90° − |φ − δ| at upper transit; and the hour angle is zero.
     bare = hourarc.Site(-17.9, 28.8, 2390.0, pressure_hpa=0.0)
     found = hourarc.rise_transit_set(bare, stars, START, STOP)
     transit = found.kind == TRANSIT
@@ -63,7 +65,7 @@ def test_rise_and_set_alternate_around_transits(site, stars):
     for target in range(len(stars)):
         kinds = [kind for kind, _ in events_of(found, target)]
         if found.status_words[target] == "crosses":
-            for one, other in zip(kinds[:-1], kinds[1:], strict=True):
+            for one, other in pairwise(kinds):
                 assert other == following[one], (target, kinds)
                 seen += 1
         else:

@@ -49,7 +49,7 @@ def test_spherical_triangle_zenith_pole_star(bare, stars):
     latitude = np.radians(site.latitude_deg)
     h, a, hour, dec = np.radians([p.altitude_deg, p.azimuth_deg, p.hour_angle_deg, p.declination_deg])
     q = np.radians(p.parallactic_angle_deg)
-    # Cosine rule, sine rule (check-values: facts of the trade), and the third relation that fixes the quadrant.
+    # Cosine rule, sine rule, and the third relation, which fixes the quadrant.
     cosine = np.sin(latitude) * np.sin(dec) + np.cos(latitude) * np.cos(dec) * np.cos(hour)
     assert np.abs(np.sin(h) - cosine).max() < 1e-9
     assert np.abs(np.sin(a) * np.cos(h) + np.sin(hour) * np.cos(dec)).max() < 1e-9
@@ -81,7 +81,7 @@ def test_same_star_stands_elsewhere_from_elsewhere(stars):
 
 
 def test_stars_turn_once_in_a_sidereal_day(bare, stars):
-    # 86164.0905 s: a fixed star is back to a few tenths of an arcsecond of aberration, precession and parallax.
+    # 86164.0905 s: back to a few tenths of an arcsecond of aberration, precession and parallax.
     site, orientation = bare
     later = WHEN[:1] + np.timedelta64(86_164_090_500_000, "ns")
     one = hourarc.place(site, stars, WHEN[:1], orientation=orientation)

@@ -142,4 +142,4 @@ def test_star_returns_after_a_sidereal_day():
     assert len(found.time_ns) == 6 or len(found.time_ns) == 5
     for kind in (events.RISE, events.TRANSIT, events.SET):
         times = found.time_ns[found.kind == kind]
-        assert abs(np.diff(times) * 1e-9 - 86_164.09).max() < 0.1  # check-values: laws
+        assert abs(np.diff(times) * 1e-9 - 86_164.09).max() < 0.1

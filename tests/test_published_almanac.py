@@ -7,8 +7,8 @@ from oracle import clock
 
 # Name, longitude, latitude, height; event; night (the date of its evening); printed time, UTC; source.
 PRINTED = [
-    # NREL, Solar Position Algorithm (Reda & Andreas 2004): local sunrise 06:12:43 at UTC−7 is 13:12:43 UTC. The
-    # sunset after it is 2003-10-18 00:18:52 UTC, not the one 24 hours before, at 00:20:19 of the same UTC day.
+    # NREL, Solar Position Algorithm (Reda & Andreas 2004): local sunrise 06:12:43 at UTC−7. The sunset
+    # after it is 2003-10-18 00:18:52 UTC, not the one 24 hours before, at 00:20:19 of the same UTC day.
     (-105.1786, 39.742476, 1830.14, "sunrise", "2003-10-16", "2003-10-17T13:12:43"),
     (-105.1786, 39.742476, 1830.14, "sunset", "2003-10-17", "2003-10-18T00:18:52"),
     (-105.1786, 39.742476, 1830.14, "sunset", "2003-10-16", "2003-10-17T00:20:19"),

@@ -61,8 +61,8 @@ def test_regression_values_of_the_erfa_test_suite():
 
 @pytest.mark.parametrize(
     ("mjd", "fraction", "apparent", "printed_s", "iau2006_ms"),
-    # Meeus, Astronomical Algorithms, 2nd ed., examples 12.a and 12.b [M]. IAU 2006/2000A lies later by 3.3 and
-    # 3.8 ms (equinox of 1982 against that of 2006).
+    # Meeus, Astronomical Algorithms, 2nd ed., examples 12.a and 12.b [M]. IAU 2006/2000A lies later by 3.3
+    # and 3.8 ms (equinox of 1982 against that of 2006).
     [
         (46895.0, 0.0, False, 13 * 3600 + 10 * 60 + 46.3668, 3.3),
         (46895.0, 0.0, True, 13 * 3600 + 10 * 60 + 46.1351, 3.8),

@@ -78,7 +78,7 @@ def apparent_equatorial(body, utc_ns, turns=3):
 
 @pytest.mark.parametrize(
     ("example", "body", "date", "ra", "dec", "tolerance_arcsec"),
-    # Meeus, Astronomical Algorithms, 2nd ed. [M], at 0h TD; tolerances are those of his series (check-values).
+    # Meeus, Astronomical Algorithms, 2nd ed. [M], at 0h TD; tolerances are those of his series.
     [
         ("25.b", "sun", (1992, 10, 13), (13, 13, 30.749), (-7, 47, 1.74), 0.05),
         ("33.a", "venus", (1992, 12, 20), (21, 4, 41.454), (-18, 53, 16.84), 0.05),
