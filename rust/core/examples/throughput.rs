@@ -1,0 +1,118 @@
+//! Time a target of the main calls on random stars, on one thread and on all.
+//!
+//! `cargo run --release -p hourarc-core --example throughput [rows]`
+
+use hourarc_core::astrometry::{Catalog, CatalogColumns, Observer, Targets};
+use hourarc_core::constants::RADIANS_PER_DEGREE;
+use hourarc_core::earth::Orientation;
+use hourarc_core::ephemeris::Ephemeris;
+use hourarc_core::events::{Days, night_bounds, track_for};
+use hourarc_core::grid::{
+    KEEP_GOING, PlaceColumn, PlaceColumns, Shape, Workers, event_table, place, window_table,
+};
+use hourarc_core::refraction::{AirmassModel, Atmosphere, Refraction};
+use hourarc_core::site::Site;
+use hourarc_core::time::{LeapSeconds, Utc};
+use hourarc_core::windows::{Column, Limits};
+use std::time::Instant;
+
+struct Random(u64);
+
+impl Random {
+    fn unit(&mut self) -> f64 {
+        self.0 = self.0.wrapping_mul(6364136223846793005).wrapping_add(1442695040888963407);
+        (self.0 >> 11) as f64 / (1u64 << 53) as f64
+    }
+}
+
+fn catalog(rows: usize) -> Catalog {
+    let mut random = Random(5);
+    let mut column =
+        |low: f64, high: f64| -> Vec<f64> { (0..rows).map(|_| low + (high - low) * random.unit()).collect() };
+    let sin_dec = column(-1.0, 1.0);
+    Catalog::new(&CatalogColumns {
+        ra_deg: &column(0.0, 360.0),
+        dec_deg: &sin_dec.iter().map(|s| s.asin() / RADIANS_PER_DEGREE).collect::<Vec<_>>(),
+        epoch_yr: &vec![2016.0; rows],
+        pm_ra_mas_yr: &column(-50.0, 50.0),
+        pm_dec_mas_yr: &column(-50.0, 50.0),
+        parallax_mas: &column(0.0, 10.0),
+        radial_velocity_km_s: &vec![0.0; rows],
+    })
+    .expect("columns of one length")
+}
+
+/// Seconds of the better of three runs.
+fn best(mut run: impl FnMut()) -> f64 {
+    (0..3)
+        .map(|_| {
+            let begun = Instant::now();
+            run();
+            begun.elapsed().as_secs_f64()
+        })
+        .fold(f64::INFINITY, f64::min)
+}
+
+fn main() {
+    let rows = std::env::args().nth(1).and_then(|word| word.parse().ok()).unwrap_or(100_000);
+    let site = Site::from_degrees(24.5127, -20.8714, 1148.0).expect("a site");
+    let air = Atmosphere {
+        pressure_hpa: Atmosphere::standard_pressure_hpa(1148.0),
+        temperature_c: 10.0,
+        relative_humidity: 0.3,
+        wavelength_um: 0.55,
+    };
+    let refraction = Refraction::new(&air, site.latitude(), 1148.0).expect("air");
+    let orientation = Orientation::constant(LeapSeconds::builtin(), 0.05, 1e-6, 1e-6, 0.0, 0.0);
+    let ephemeris = Ephemeris::default();
+    let observer =
+        Observer { site: &site, refraction: &refraction, orientation: &orientation, ephemeris: &ephemeris };
+    let catalog = catalog(rows);
+    let targets = Targets::Catalog(&catalog);
+    let (start, stop) = night_bounds(61_109, site.longitude());
+    let pairs: Vec<Utc> = (0..rows)
+        .map(|i| Utc::from_nanoseconds(start.nanoseconds() + 315 * i as i64 * 100_000_000_000 / rows as i64))
+        .collect();
+    let mut limits = Limits::none(AirmassModel::Pickering2002);
+    let degrees = |value: f64| Some(Column::All(value * RADIANS_PER_DEGREE));
+    limits.altitude_min = degrees(30.0);
+    limits.sun_altitude_max = degrees(-18.0);
+    limits.sun_separation_min = degrees(30.0);
+    let mut with_moon = limits.clone();
+    with_moon.moon_separation_min = degrees(30.0);
+    for threads in [1, 0] {
+        let mut go = KEEP_GOING;
+        let mut report = |name: &str, seconds: f64| {
+            let each = seconds * 1e9 / rows as f64;
+            println!("threads {threads}  {name:34} {:8.1} ms {each:9.1} ns a row", seconds * 1e3);
+        };
+        let (mut a, mut b, mut status) = (vec![0.0; rows], vec![0.0; rows], vec![0u8; rows]);
+        for (name, when, shape) in [
+            ("place one instant, alt az", &pairs[..1], Shape::Grid),
+            ("place pairwise, alt az", &pairs[..], Shape::Pairwise),
+        ] {
+            let seconds = best(|| {
+                let columns =
+                    vec![(PlaceColumn::AltitudeDeg, &mut a[..]), (PlaceColumn::AzimuthDeg, &mut b[..])];
+                let out = PlaceColumns { columns, status: &mut status };
+                place(&observer, &targets, when, shape, out, &mut Workers::new(threads, &mut go))
+                    .expect("places");
+            });
+            report(name, seconds);
+        }
+        let track = track_for(&observer, start, stop).expect("a span");
+        let mut days = Days::new(observer, &track, start, stop).expect("a span");
+        let seconds = best(|| {
+            let table = event_table(&mut days, &targets, 0.0, &mut Workers::new(threads, &mut go));
+            assert!(table.expect("events").time.len() > rows / 2);
+        });
+        report("rise, transit, set", seconds);
+        for (name, limits) in [("windows", &limits), ("windows with the Moon", &with_moon)] {
+            let seconds = best(|| {
+                let table = window_table(&mut days, &targets, limits, &mut Workers::new(threads, &mut go));
+                assert!(table.expect("windows").start.len() > rows / 4);
+            });
+            report(name, seconds);
+        }
+    }
+}
