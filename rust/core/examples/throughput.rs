@@ -82,7 +82,7 @@ fn main() {
     with_moon.moon_separation_min = degrees(30.0);
     for threads in [1, 0] {
         let mut go = KEEP_GOING;
-        let mut report = |name: &str, seconds: f64| {
+        let report = |name: &str, seconds: f64| {
             let each = seconds * 1e9 / rows as f64;
             println!("threads {threads}  {name:34} {:8.1} ms {each:9.1} ns a row", seconds * 1e3);
         };

@@ -37,6 +37,53 @@ pub struct Star {
     pub epoch_yr: f64,
 }
 
+/// Rows of a catalogue as columns, all of one length.
+#[derive(Debug, Clone, Copy)]
+pub struct StarColumns<'a> {
+    /// Components of the unit vectors.
+    pub position: [&'a [f64]; 3],
+    /// Components of their rates per Julian year.
+    pub motion: [&'a [f64]; 3],
+    /// Parallax, radians.
+    pub parallax: &'a [f64],
+    /// Epoch, Julian years after J2000.0.
+    pub epoch_yr: &'a [f64],
+}
+
+impl StarColumns<'_> {
+    /// Number of rows.
+    pub fn len(&self) -> usize {
+        self.parallax.len()
+    }
+
+    /// Whether there are no rows.
+    pub fn is_empty(&self) -> bool {
+        self.parallax.is_empty()
+    }
+
+    /// The same columns, each visibly of `rows` rows, so that loops over them need no bounds checks.
+    #[inline(always)]
+    pub fn exactly(self, rows: usize) -> Self {
+        StarColumns {
+            position: self.position.map(|column| &column[..rows]),
+            motion: self.motion.map(|column| &column[..rows]),
+            parallax: &self.parallax[..rows],
+            epoch_yr: &self.epoch_yr[..rows],
+        }
+    }
+
+    /// One row.
+    #[inline(always)]
+    pub fn star(&self, row: usize) -> Star {
+        Star {
+            position: [self.position[0][row], self.position[1][row], self.position[2][row]],
+            motion: [self.motion[0][row], self.motion[1][row], self.motion[2][row]],
+            parallax: self.parallax[row],
+            epoch_yr: self.epoch_yr[row],
+        }
+    }
+}
+
 /// A catalogue of stars. A row that is not good has NaN in its vectors, so it can touch no other.
 #[derive(Debug, Clone)]
 pub struct Catalog {
@@ -118,6 +165,16 @@ impl Catalog {
     /// What is to be said of each row.
     pub fn status(&self) -> &[Status] {
         &self.status
+    }
+
+    /// The prepared columns of some rows, for loops over them. Panics past the end, like a slice.
+    pub fn columns(&self, rows: std::ops::Range<usize>) -> StarColumns<'_> {
+        StarColumns {
+            position: [0, 1, 2].map(|axis| &self.position[axis][rows.clone()]),
+            motion: [0, 1, 2].map(|axis| &self.motion[axis][rows.clone()]),
+            parallax: &self.parallax[rows.clone()],
+            epoch_yr: &self.epoch_yr[rows],
+        }
     }
 
     /// One row. Panics past the end, like a slice.

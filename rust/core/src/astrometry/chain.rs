@@ -22,7 +22,7 @@ use crate::math::vector::{Vector, add_scaled, norm, scale, sub, unit};
 /// Earth, farther than 5° from the Sun (`tests/test_accuracy_place.py`). NaN in, NaN out.
 #[inline(always)]
 pub fn star_direction(star: &Star, sky: &Sky) -> Vector {
-    let years = sky.tdb_yr - star.epoch_yr + light_travel_lead_yr(star.position, sky.observer_au);
+    let years = sky.epoch_yr - star.epoch_yr + light_travel_lead_yr(star.position, sky.observer_au);
     let barycentric = add_scaled(star.position, years, star.motion);
     let coordinate = unit(from_observer(barycentric, star.parallax, sky.observer_au));
     let natural = deflected(coordinate, coordinate, sky.sun_to_observer, sky.sun_distance_au);
@@ -49,11 +49,12 @@ pub fn body_direction(
 ) -> std::result::Result<BodyDirection, Status> {
     // The error shrinks by v/c ≈ 1e-4 an iteration: after three it is below 1e-12 of the path.
     const ITERATIONS: usize = 3;
+    let tdb = sky.tdb();
     let mut light_time_s = 0.0;
     let mut from_observer_au = [0.0; 3];
     let mut body_au = [0.0; 3];
     for _ in 0..=ITERATIONS {
-        body_au = ephemeris.position(body, sky.tdb.plus_seconds(-light_time_s))?;
+        body_au = ephemeris.position(body, tdb.plus_seconds(-light_time_s))?;
         from_observer_au = sub(body_au, sky.observer_au);
         light_time_s = norm(from_observer_au) * LIGHT_TIME_AU_S;
     }

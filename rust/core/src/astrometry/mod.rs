@@ -15,7 +15,7 @@ pub mod space_motion;
 pub mod targets;
 pub mod track;
 
-pub use catalog::{Catalog, CatalogColumns, Star};
+pub use catalog::{Catalog, CatalogColumns, Star, StarColumns};
 pub use chain::{BodyDirection, body_direction, star_direction};
 pub use sky::{Observer, Sky};
 pub use targets::Targets;

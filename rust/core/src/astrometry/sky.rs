@@ -96,10 +96,8 @@ impl Celestial {
 pub struct Sky {
     /// The instant, TAI.
     pub tai: Instant<Tai>,
-    /// The instant, TDB.
-    pub tdb: Instant<Tdb>,
-    /// The instant, Julian years TDB after J2000.0.
-    pub tdb_yr: f64,
+    /// The instant, Julian years after J2000.0 (TT, which is TDB to 2 ms or 1e-10 yr).
+    pub epoch_yr: f64,
     /// Barycentric position of the observer, au.
     pub observer_au: Vector,
     /// Barycentric velocity of the observer over the speed of light.
@@ -126,6 +124,11 @@ impl Sky {
     /// [`Status::OrientationExtrapolated`] or [`Status::Ok`].
     pub fn note(&self) -> Status {
         self.pole.quality.status()
+    }
+
+    /// The instant, TDB: what an ephemeris is asked with.
+    pub fn tdb(&self) -> Instant<Tdb> {
+        self.tai.to_tt().to_tdb()
     }
 
     /// The sky of the Earth's centre at the same instant: no diurnal parallax, no diurnal aberration,
@@ -160,7 +163,6 @@ impl Observer<'_> {
     /// which is fast, is always analytic.
     pub fn sky_from(&self, tai: Instant<Tai>, celestial: &Celestial) -> Sky {
         let tt = tai.to_tt();
-        let tdb = tt.to_tdb();
         let pole = self.orientation.at_tai(tai);
         let rotation_angle = earth_rotation_angle(ut1(tai, &pole));
         // s belongs to the model pole; the observed corrections are added to X and Y afterwards
@@ -179,11 +181,10 @@ impl Observer<'_> {
         let velocity_c =
             scale(AU_PER_DAY_OVER_C * SECONDS_PER_DAY / ASTRONOMICAL_UNIT_M, to_gcrs(cross(spin, in_tirs_m)));
 
-        let (day, fraction) = tdb.mjd_parts();
+        let (day, fraction) = tt.mjd_parts();
         let mut sky = Sky {
             tai,
-            tdb,
-            tdb_yr: ((day - J2000_MJD) + fraction) / DAYS_PER_JULIAN_YEAR,
+            epoch_yr: ((day - J2000_MJD) + fraction) / DAYS_PER_JULIAN_YEAR,
             observer_au: [0.0; 3],
             velocity_c: [0.0; 3],
             inverse_gamma: 1.0,

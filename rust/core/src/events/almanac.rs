@@ -208,7 +208,7 @@ fn moon_above_its_horizon(arc: &Arc<'_>, fraction: f64) -> std::result::Result<f
     let sky = arc.geocentric_sky(fraction)?;
     let ephemeris = arc.observer.ephemeris;
     let direction = rotate(&sky.local, body_direction(Body::Moon, ephemeris, &sky)?.direction);
-    let distance_au = norm(sub(ephemeris.position(Body::Moon, sky.tdb)?, sky.observer_au));
+    let distance_au = norm(sub(ephemeris.position(Body::Moon, sky.tdb())?, sky.observer_au));
     let sin_parallax = WGS84_EQUATORIAL_RADIUS_M / ASTRONOMICAL_UNIT_M / distance_au;
     let semidiameter = (MOON_RADIUS * sin_parallax).asin();
     let threshold = sin_parallax.asin() - semidiameter - HORIZON_REFRACTION_DEG * RADIANS_PER_DEGREE;

@@ -4,6 +4,7 @@
 //! that a fork could break, and there is no pool to configure.
 
 use crate::error::{Error, Result};
+use crate::math::dispatch::Isa;
 use std::sync::atomic::{AtomicBool, AtomicUsize, Ordering};
 use std::sync::{Condvar, Mutex, PoisonError};
 use std::time::Duration;
@@ -14,9 +15,10 @@ const ASK_EVERY: Duration = Duration::from_millis(40);
 /// For callers who never want to stop.
 pub const KEEP_GOING: fn() -> bool = || true;
 
-/// How to run: on how many threads, and whom to ask whether to go on.
+/// How to run: on how many threads, with which instructions, and whom to ask whether to go on.
 pub struct Workers<'a> {
     threads: usize,
+    isa: Isa,
     keep_going: &'a mut dyn FnMut() -> bool,
 }
 
@@ -28,7 +30,18 @@ impl<'a> Workers<'a> {
             0 => std::thread::available_parallelism().map_or(1, usize::from),
             threads => threads,
         };
-        Workers { threads, keep_going }
+        Workers { threads, isa: Isa::best(), keep_going }
+    }
+
+    /// With loops compiled for one instruction set, where results must be the same bits on machines
+    /// that differ.
+    pub fn with_isa(self, isa: Isa) -> Self {
+        Workers { isa, ..self }
+    }
+
+    /// The instruction set of the loops.
+    pub fn isa(&self) -> Isa {
+        self.isa
     }
 
     /// Does `work` on every item, in any order.

@@ -1,0 +1,120 @@
+//! The columns of a place.
+
+use crate::error::{Error, Result};
+use crate::refraction::AirmassModel;
+
+/// What can be computed of a place.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+#[repr(u8)]
+pub enum PlaceColumn {
+    /// Observed altitude, degrees.
+    AltitudeDeg,
+    /// Azimuth from north through east, degrees in [0, 360).
+    AzimuthDeg,
+    /// Local hour angle, degrees in (−180, 180].
+    HourAngleDeg,
+    /// Declination of date on the celestial intermediate pole, degrees.
+    DeclinationDeg,
+    /// Airmass by [`PLACE_AIRMASS`]; NaN below the horizon.
+    Airmass,
+    /// Parallactic angle, degrees in (−180, 180].
+    ParallacticAngleDeg,
+    /// Distance from the Moon's centre, degrees, both topocentric without refraction.
+    MoonSeparationDeg,
+    /// Distance from the Sun's centre, degrees, both topocentric without refraction.
+    SunSeparationDeg,
+}
+
+/// The formula behind [`PlaceColumn::Airmass`].
+pub const PLACE_AIRMASS: AirmassModel = AirmassModel::KastenYoung1989;
+
+impl PlaceColumn {
+    /// Every column.
+    pub const ALL: [PlaceColumn; 8] = [
+        PlaceColumn::AltitudeDeg,
+        PlaceColumn::AzimuthDeg,
+        PlaceColumn::HourAngleDeg,
+        PlaceColumn::DeclinationDeg,
+        PlaceColumn::Airmass,
+        PlaceColumn::ParallacticAngleDeg,
+        PlaceColumn::MoonSeparationDeg,
+        PlaceColumn::SunSeparationDeg,
+    ];
+
+    /// The word for this column.
+    pub fn word(self) -> &'static str {
+        match self {
+            PlaceColumn::AltitudeDeg => "altitude_deg",
+            PlaceColumn::AzimuthDeg => "azimuth_deg",
+            PlaceColumn::HourAngleDeg => "hour_angle_deg",
+            PlaceColumn::DeclinationDeg => "declination_deg",
+            PlaceColumn::Airmass => "airmass",
+            PlaceColumn::ParallacticAngleDeg => "parallactic_angle_deg",
+            PlaceColumn::MoonSeparationDeg => "moon_separation_deg",
+            PlaceColumn::SunSeparationDeg => "sun_separation_deg",
+        }
+    }
+
+    /// The column of a word.
+    ///
+    /// # Errors
+    /// When there is none.
+    pub fn from_word(word: &str) -> Result<Self> {
+        Self::ALL
+            .into_iter()
+            .find(|column| column.word() == word)
+            .ok_or_else(|| Error::invalid("column", word, Self::ALL.map(PlaceColumn::word).join(", ")))
+    }
+}
+
+/// The columns asked for and the status, all of one length, owned by the caller.
+#[derive(Debug)]
+pub struct PlaceColumns<'a> {
+    /// Each column once.
+    pub columns: Vec<(PlaceColumn, &'a mut [f64])>,
+    /// [`Status`](crate::error::Status) codes.
+    pub status: &'a mut [u8],
+}
+
+impl<'a> PlaceColumns<'a> {
+    /// Whether every column has as many values as there are rows.
+    pub(super) fn check(&self, rows: usize) -> Result<()> {
+        let lengths = self.columns.iter().map(|(column, values)| (column.word(), values.len()));
+        for (name, length) in lengths.chain([("status", self.status.len())]) {
+            if length != rows {
+                return Err(Error::invalid(name, format!("{length} values"), format!("{rows}")));
+            }
+        }
+        Ok(())
+    }
+
+    /// Cut into blocks of `size` rows, each with the number of its first row.
+    pub(super) fn blocks(self, size: usize) -> Vec<(usize, PlaceColumns<'a>)> {
+        let mut blocks = Vec::with_capacity(self.status.len().div_ceil(size));
+        let (mut first, mut rest) = (0, self);
+        while !rest.status.is_empty() {
+            let rows = size.min(rest.status.len());
+            let (block, after) = rest.split_at(rows);
+            blocks.push((first, block));
+            (first, rest) = (first + rows, after);
+        }
+        blocks
+    }
+
+    fn split_at(self, rows: usize) -> (Self, Self) {
+        let (status, rest_status) = self.status.split_at_mut(rows);
+        let (columns, rest) = self
+            .columns
+            .into_iter()
+            .map(|(column, values)| {
+                let (first, rest) = values.split_at_mut(rows);
+                ((column, first), (column, rest))
+            })
+            .unzip();
+        (PlaceColumns { columns, status }, PlaceColumns { columns: rest, status: rest_status })
+    }
+
+    pub(super) fn wants(&self, wanted: PlaceColumn) -> bool {
+        self.columns.iter().any(|(column, _)| *column == wanted)
+    }
+}
