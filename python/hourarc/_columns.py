@@ -32,14 +32,14 @@ def numbers(value: Any, what: str, unit: str = "") -> Floats:
         array = np.asarray(value)
     except (TypeError, ValueError) as error:  # ragged nesting, for example
         raise WrongType.of(what, value, "a number or an array of numbers") from error
-    if array.dtype == object:  # None, Decimal, arrow scalars: only what is a number passes
+    if array.dtype == object:  # None becomes NaN, a Decimal a float; text that spells a number does not pass
         try:
+            if any(isinstance(each, (str, bytes)) for each in array.reshape(-1)):
+                raise TypeError("text")
             array = array.astype(np.float64)
         except (TypeError, ValueError) as error:
             raise WrongType.of(what, value, "a number or an array of numbers") from error
-    if array.dtype.kind not in "fiub":
-        raise WrongType.of(what, value, "a number or an array of numbers")
-    if array.dtype.kind == "b" and array.size:
+    if array.dtype.kind not in "fiu":
         raise WrongType.of(what, value, "a number or an array of numbers")
     result = np.asarray(array, dtype=np.float64)
     if mask is not np.ma.nomask:

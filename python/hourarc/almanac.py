@@ -22,7 +22,7 @@ Times = NDArray[np.datetime64]
 _UNIX_EPOCH_MJD = 40_587  # 1970-01-01, exact
 
 
-@dataclass(frozen=True, slots=True, repr=False)
+@dataclass(frozen=True, slots=True, repr=False, eq=False)
 class Almanac(ColumnResult):
     """One row a night; every column has shape (nights,). Instants are UTC, NaT where there is none.
 

@@ -7,21 +7,24 @@ from dataclasses import dataclass
 from typing import Any
 
 import numpy as np
-from numpy.typing import ArrayLike, NDArray
+from numpy.typing import NDArray
 
 from . import _engine
-from ._columns import Floats, column, thread_count
+from ._columns import Floats, scalar, thread_count
 from .errors import InvalidArgument
 from .orientation import Orientation, as_orientation
-from .results import Coded, ColumnResult, Ragged, words
+from .results import STATUS_WORDS, Coded, ColumnResult, Ragged, words
 from .site import Site, as_site
 from .targets import Bodies, Catalog, as_targets
 from .times import from_nanoseconds, span
 
-__all__ = ["KIND_WORDS", "Event", "Events", "rise_transit_set"]
+__all__ = ["KIND_WORDS", "PASSAGE_WORDS", "Event", "Events", "rise_transit_set"]
 
 KIND_WORDS = ("rise", "transit", "set")
 """The word for each code of `Events.kind`."""
+
+PASSAGE_WORDS: tuple[str, ...] = tuple(_engine.event_status_words())
+"""The word for each code of `Events.status`: what a target does over the span."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -36,7 +39,7 @@ class Event:
     horizon_scatter_s: float
 
 
-@dataclass(frozen=True, slots=True, repr=False)
+@dataclass(frozen=True, slots=True, repr=False, eq=False)
 class Events(Ragged, ColumnResult):
     """Rises, transits and sets of many targets, in order of time within each.
 
@@ -60,6 +63,9 @@ class Events(Ragged, ColumnResult):
     not happen at all."""
     status: NDArray[np.uint8]
     """What the target does over the span, shape (targets,); `status_words` says it."""
+    row_status: NDArray[np.uint8]
+    """What is to be said of each target's row, shape (targets,): why it is bad, or that the Earth orientation
+    is extrapolated; `row_status_words` says it."""
     name: NDArray[np.str_] | None
     """The names of the targets, or None."""
 
@@ -70,8 +76,13 @@ class Events(Ragged, ColumnResult):
 
     @property
     def status_words(self) -> NDArray[np.str_]:
-        """The status of each target as a word: crosses, always_above, always_below or a bad row's reason."""
-        return words(self.status, _engine.event_status_words())
+        """The status of each target as a word: crosses, always_above, always_below bad_row."""
+        return words(self.status, PASSAGE_WORDS)
+
+    @property
+    def row_status_words(self) -> NDArray[np.str_]:
+        """What is to be said of each target's row, as a word."""
+        return words(self.row_status, STATUS_WORDS)
 
     def of(self, target: int) -> list[Event]:
         """The events of one target, by its row number."""
@@ -113,22 +124,19 @@ def rise_transit_set(
     start: Any,
     stop: Any,
     *,
-    altitude_deg: ArrayLike = 0.0,
+    altitude_deg: float = 0.0,
     orientation: Orientation | None = None,
     threads: int | None = None,
 ) -> Events:
     """Every rise, transit and set of each target within the half-open span [start, stop).
 
-    ``altitude_deg``: the observed altitude of the centre at which a target rises and sets, degrees; a
-    scalar, or one for each target.
+    ``altitude_deg``: the observed altitude of the centre at which a target rises and sets, degrees.
     """
     here, rows = as_site(site), as_targets(targets)
     first, last = span(start, stop)
-    threshold = column(altitude_deg, "rise_transit_set: altitude_deg", "deg")
-    if len(threshold) not in (1, len(rows)):
-        given = f"{len(threshold)} values"
-        allowed = f"one value, or one for each of {len(rows)} targets"
-        raise InvalidArgument.of("rise_transit_set: altitude_deg", given, allowed)
+    threshold = scalar(altitude_deg, "rise_transit_set: altitude_deg", "deg")
+    if not -90.0 <= threshold <= 90.0:
+        raise InvalidArgument.of("rise_transit_set: altitude_deg", f"{threshold:g}", "-90 to 90 degrees")
     earth = as_orientation(orientation)
     earth.check(np.array([first, last]), "start, stop")
     made = _engine.rise_transit_set(

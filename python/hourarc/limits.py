@@ -83,7 +83,7 @@ LIMITS: Mapping[str, Limit] = MappingProxyType(
             Limit(
                 "airmass_model",
                 "formula by which altitude becomes airmass",
-                default=_engine.airmass_model_words()[0],
+                default="kasten_young_1989",
                 choices=tuple(_engine.airmass_model_words()),
             ),
             Limit(
@@ -123,7 +123,7 @@ LIMITS: Mapping[str, Limit] = MappingProxyType(
             Limit(
                 "hour_angle_min_h",
                 "hour angle of the target is at least this, east negative",
-                unit="h",
+                unit="hourangle",
                 low=-12.0,
                 high=12.0,
                 at_most="hour_angle_max_h",
@@ -131,11 +131,11 @@ LIMITS: Mapping[str, Limit] = MappingProxyType(
             Limit(
                 "hour_angle_max_h",
                 "hour angle of the target is at most this, west positive",
-                unit="h",
+                unit="hourangle",
                 low=-12.0,
                 high=12.0,
             ),
-            Limit("window_min_s", "a window lasts at least this", unit="s", low=0.0, high=86_400.0 * 366),
+            Limit("window_min_s", "a window lasts at least this", unit="s", low=0.0, high=86_400.0),
         )
     }
 )
@@ -197,16 +197,16 @@ class Limits:
             if value is not None
         }
 
-    def for_engine(self, targets: int) -> dict[str, Floats | str]:
-        """The limits in force as the engine takes them: words, or columns of length 1 or `targets`.
+    def for_engine(self, targets: int) -> dict[str, float | Floats | str]:
+        """The limits in force as the engine takes them: words, numbers, or columns of `targets` values.
 
         Per-target values that are out of range or contradict another limit become NaN, which the engine
         reports as a bad row.
         """
-        made: dict[str, Floats | str] = {}
+        made: dict[str, float | Floats | str] = {}
         for key, value in self._values.items():
             if isinstance(value, np.ndarray):
-                if len(value) not in (1, targets):
+                if len(value) != targets:
                     raise InvalidArgument.of(
                         f"Limits: {key}",
                         f"{len(value)} values",
@@ -215,13 +215,13 @@ class Limits:
                 limit = LIMITS[key]
                 made[key] = np.where((value >= limit.low) & (value <= limit.high), value, np.nan)
             elif value is not None:
-                made[key] = value if isinstance(value, str) else np.array([value])
+                made[key] = value
         for key, limit in LIMITS.items():
             low, high = made.get(key), made.get(limit.at_most)
             if low is None or high is None or isinstance(low, str) or isinstance(high, str):
                 continue
-            if len(low) > 1 or len(high) > 1:
-                made[key] = np.where(low > high, np.nan, low)
+            if isinstance(low, np.ndarray) or isinstance(high, np.ndarray):
+                made[key] = np.where(np.greater(low, high), np.nan, low)
         return made
 
     def __setattr__(self, attribute: str, value: object) -> None:

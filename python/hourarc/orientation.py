@@ -7,10 +7,8 @@ files; they are read with our own parsers, and astropy itself is not imported.
 from __future__ import annotations
 
 import functools
-import hashlib
+import os
 from dataclasses import dataclass
-from os import PathLike
-from pathlib import Path
 from typing import Any
 
 import numpy as np
@@ -65,7 +63,7 @@ class Provenance:
         }
 
 
-@dataclass(frozen=True, slots=True, repr=False)
+@dataclass(frozen=True, slots=True, repr=False, eq=False)
 class OrientationValues(ColumnResult):
     """Earth orientation at some instants; every column has the shape of the instants."""
 
@@ -92,6 +90,11 @@ class OrientationValues(ColumnResult):
     def quality_words(self) -> NDArray[np.str_]:
         """The quality as a word."""
         return words(self.quality, QUALITY_WORDS)
+
+    @property
+    def status_words(self) -> NDArray[np.str_]:
+        """The status of each instant as a word."""
+        return words(self.status, STATUS_WORDS)
 
     def _table(self) -> dict[str, Any]:
         columns: dict[str, Any] = {
@@ -144,22 +147,26 @@ class Orientation:
     @classmethod
     def from_file(
         cls,
-        path: str | PathLike[str],
+        path: str | os.PathLike[str],
         *,
-        leap_seconds: str | PathLike[str] | None = None,
+        leap_seconds: str | os.PathLike[str] | None = None,
         policy: str = "extrapolate",
     ) -> Orientation:
         """A table of IERS in the finals2000A or the C04 layout, told apart by what is in it.
 
         ``leap_seconds``: a file in the layout of IERS Leap_Second.dat; None takes the packaged one.
         """
-        text, source = _read(Path(path))
+        text, source = _read(path)
         if leap_seconds is None:
-            leap_text, leap_source = _read(Path(_iers_data().IERS_LEAP_SECOND_FILE))
+            leap_text, leap_source = _read(_iers_data().IERS_LEAP_SECOND_FILE)
         else:
-            leap_text, leap_source = _read(Path(leap_seconds))
+            leap_text, leap_source = _read(leap_seconds)
         c04 = _is_c04(text)
-        engine = _engine.Orientation.tables(leap_text, text if c04 else None, None if c04 else text)
+        engine = _engine.Orientation.tables(
+            (leap_text, leap_source.name),
+            (text, str(path)) if c04 else None,
+            None if c04 else (text, str(path)),
+        )
         sources = (Source(f"{'C04' if c04 else 'finals2000A'} {source.name}", source.sha256), leap_source)
         return cls._of(engine, _provenance(engine, str(path), sources), policy)
 
@@ -178,7 +185,7 @@ class Orientation:
 
         Leap seconds are those of the packaged file.
         """
-        leap_text, leap_source = _read(Path(_iers_data().IERS_LEAP_SECOND_FILE))
+        leap_text, leap_source = _read(_iers_data().IERS_LEAP_SECOND_FILE)
         numbers = {
             "dut1_s": scalar(dut1_s, "Orientation.constant: dut1_s", "s"),
             "xp_arcsec": scalar(xp_arcsec, "Orientation.constant: xp_arcsec", "arcsec"),
@@ -186,7 +193,7 @@ class Orientation:
             "dx_mas": scalar(dx_mas, "Orientation.constant: dx_mas", "mas"),
             "dy_mas": scalar(dy_mas, "Orientation.constant: dy_mas", "mas"),
         }
-        engine = _engine.Orientation.constant(leap_text, *numbers.values())
+        engine = _engine.Orientation.constant((leap_text, leap_source.name), *numbers.values())
         return cls._of(engine, _provenance(engine, "constant", (leap_source,)), policy)
 
     def at(self, when: Any) -> OrientationValues:
@@ -233,10 +240,12 @@ def as_orientation(orientation: Any) -> Orientation:
 @functools.cache
 def _packaged() -> tuple[_engine.Orientation, Provenance]:
     data = _iers_data()
-    leap_text, leap_source = _read(Path(data.IERS_LEAP_SECOND_FILE))
-    c04_text, c04_source = _read(Path(data.IERS_B_FILE))
-    finals_text, finals_source = _read(Path(data.IERS_A_FILE))
-    engine = _engine.Orientation.tables(leap_text, c04_text, finals_text)
+    leap_text, leap_source = _read(data.IERS_LEAP_SECOND_FILE)
+    c04_text, c04_source = _read(data.IERS_B_FILE)
+    finals_text, finals_source = _read(data.IERS_A_FILE)
+    engine = _engine.Orientation.tables(
+        (leap_text, leap_source.name), (c04_text, c04_source.name), (finals_text, finals_source.name)
+    )
     sources = (
         Source(f"C04 {c04_source.name}", c04_source.sha256),
         Source(f"finals2000A {finals_source.name}", finals_source.sha256),
@@ -251,16 +260,19 @@ def _iers_data() -> Any:
     return astropy_iers_data
 
 
-def _read(path: Path) -> tuple[str, Source]:
+def _read(path: str | os.PathLike[str]) -> tuple[str, Source]:
+    import hashlib  # only when a table is read: keeps the import light
+
     try:
-        raw = path.read_bytes()
+        with open(path, "rb") as file:
+            raw = file.read()
     except OSError as error:
         raise TableError(f"{path}: cannot be read: {error.strerror or error}") from error
     try:
         text = raw.decode("ascii")
     except UnicodeDecodeError as error:
         raise TableError(f"{path}: not a text table: byte {error.start} is not ASCII") from error
-    return text, Source(path.name, hashlib.sha256(raw).hexdigest())
+    return text, Source(os.path.basename(path), hashlib.sha256(raw).hexdigest())
 
 
 def _is_c04(text: str) -> bool:
@@ -283,5 +295,5 @@ def _provenance(engine: _engine.Orientation, origin: str, sources: tuple[Source,
     )
 
 
-def _date(mjd: float | None) -> np.datetime64 | None:
-    return None if mjd is None else np.datetime64(int(mjd) - _UNIX_EPOCH_MJD, "D")
+def _date(mjd: int | None) -> np.datetime64 | None:
+    return None if mjd is None else np.datetime64(mjd - _UNIX_EPOCH_MJD, "D")

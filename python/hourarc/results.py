@@ -77,7 +77,9 @@ COLUMNS: Mapping[str, Column] = {
     "moonrise": Column("", "time.epoch", "first moonrise of the night, UTC"),
     "moonset": Column("", "time.epoch", "first moonset of the night, UTC"),
     "moon_age_d": Column("d", "time.age", "days since the new Moon, at local mean midnight"),
-    "moon_illuminated_fraction": Column("", "arith.ratio", "illuminated fraction, at local mean midnight"),
+    "moon_illuminated_fraction": Column(
+        "", "phys.area;arith.ratio", "illuminated fraction, at local mean midnight"
+    ),
     "dark_hours": Column("h", "time.duration", "hours with the Sun below -18 degrees"),
     "dark_hours_moonless": Column("h", "time.duration", "the same, with the Moon below the horizon"),
     # Earth orientation
@@ -94,7 +96,7 @@ COLUMNS: Mapping[str, Column] = {
 STATUS_WORDS: Mapping[int, str] = _engine.status_words()
 """The word for each status code. Codes from 16 on mark rows without outputs."""
 
-FIRST_BAD_STATUS = 16
+FIRST_BAD_STATUS: int = _engine.first_bad_status
 """Status codes from here on mark rows whose outputs are NaN or NaT."""
 
 
@@ -113,7 +115,7 @@ class Coded(NamedTuple):
     names: Mapping[int, str] | Sequence[str]
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(frozen=True, slots=True, repr=False, eq=False)
 class ColumnResult:
     """The base of the results: what tables and `repr` need, from `_table()` of each."""
 

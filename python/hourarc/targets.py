@@ -21,7 +21,7 @@ __all__ = ["Bodies", "Catalog", "as_targets"]
 _UNITS = {
     "ra_deg": "deg",
     "dec_deg": "deg",
-    "epoch_yr": "",
+    "epoch_yr": "yr",
     "pm_ra_mas_yr": "mas / yr",
     "pm_dec_mas_yr": "mas / yr",
     "parallax_mas": "mas",

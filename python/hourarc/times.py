@@ -51,18 +51,18 @@ def to_nanoseconds(value: Any, what: str) -> tuple[Nanoseconds, tuple[int, ...]]
     NaT is passed on (a wrong row, not a wrong call). Units finer than the nanosecond are rounded
     down. Years outside 1678–2261 raise `InvalidArgument`.
     """
-    if "astropy" in sys.modules:
+    if _is_astropy_time(value):
         from . import interop
 
-        if interop.is_time(value):
-            nanoseconds = interop.time_to_nanoseconds(value)
-            return _checked(nanoseconds.view("datetime64[ns]"), what)
+        return _checked(interop.time_to_nanoseconds(value).view("datetime64[ns]"), what)
     if isinstance(value, str):
         return _checked(np.asarray(_from_text(value, what)), what)
     if isinstance(value, (_datetime.datetime, _datetime.date)):
         return _checked(np.asarray(_from_datetime(value, what)), what)
     if isinstance(value, np.ma.MaskedArray):
         return to_nanoseconds(np.where(np.ma.getmaskarray(value), np.datetime64("NaT"), value.data), what)
+    if value is None:  # an argument left out, not a missing row
+        raise WrongType.of(what, value, FORMS)
     try:
         array = np.asarray(value)
     except (TypeError, ValueError) as error:
@@ -118,6 +118,15 @@ def day_number(value: Any, what: str) -> int:
     if not isinstance(value, (str, _datetime.date, np.datetime64)):
         raise WrongType.of(what, value, allowed)
     return instant(value, what) // (86_400 * _NANOSECONDS_PER_SECOND) + _UNIX_EPOCH_MJD
+
+
+def _is_astropy_time(value: Any) -> bool:
+    """Whether `value` is an astropy Time; without astropy loaded, nothing is."""
+    if "astropy" not in sys.modules:
+        return False
+    from . import interop
+
+    return interop.is_time(value)
 
 
 def _checked(times: NDArray[np.datetime64], what: str) -> tuple[Nanoseconds, tuple[int, ...]]:
@@ -213,6 +222,9 @@ def _from_object(value: Any, what: str) -> np.datetime64:
     """One element of an object array, checked on its own so that the message names it."""
     if value is None:
         return np.datetime64("NaT", "ns")
+    known = isinstance(value, (str, _datetime.date, np.datetime64)) or _is_astropy_time(value)
+    if not known and np.asarray(value).dtype == object:  # would come back here for ever
+        raise WrongType.of(what, value, FORMS)
     nanoseconds, shape = to_nanoseconds(value, what)
     if shape != ():
         raise WrongType.of(what, value, FORMS)

@@ -40,7 +40,7 @@ class Window:
     best_time: np.datetime64
 
 
-@dataclass(frozen=True, slots=True, repr=False)
+@dataclass(frozen=True, slots=True, repr=False, eq=False)
 class Windows(Ragged, ColumnResult):
     """The windows of many targets, in order of time within each.
 

@@ -4,6 +4,8 @@ use std::f64::consts::PI;
 
 /// Degrees to radians. Exact.
 pub const RADIANS_PER_DEGREE: f64 = PI / 180.0;
+/// Hours of angle to radians. Exact.
+pub const RADIANS_PER_HOUR: f64 = PI / 12.0;
 /// Arcseconds to radians. Exact.
 pub const RADIANS_PER_ARCSECOND: f64 = PI / 648_000.0;
 /// Milliarcseconds to radians. Exact.

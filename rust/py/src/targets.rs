@@ -1,0 +1,112 @@
+//! Targets: a catalogue, or bodies of the solar system.
+
+use hourarc_core::astrometry::{self, CatalogColumns};
+use hourarc_core::ephemeris::{Body, Ephemeris};
+use numpy::PyArray1;
+use pyo3::prelude::*;
+
+use crate::arrays::{Floats, codes, column, equal};
+use crate::errors::raise;
+
+/// Rows of catalogue places.
+#[pyclass(frozen, module = "hourarc._engine")]
+pub struct Catalog {
+    /// The rows, prepared.
+    pub rows: astrometry::Catalog,
+}
+
+#[pymethods]
+impl Catalog {
+    #[new]
+    fn new(
+        py: Python<'_>,
+        ra_deg: Floats<'_>,
+        dec_deg: Floats<'_>,
+        epoch_yr: Floats<'_>,
+        pm_ra_mas_yr: Floats<'_>,
+        pm_dec_mas_yr: Floats<'_>,
+        parallax_mas: Floats<'_>,
+        radial_velocity_km_s: Floats<'_>,
+    ) -> PyResult<Self> {
+        let [ra_deg, dec_deg, epoch_yr, pm_ra_mas_yr, pm_dec_mas_yr, parallax_mas, radial_velocity_km_s] =
+            equal([
+                ("ra_deg", &ra_deg),
+                ("dec_deg", &dec_deg),
+                ("epoch_yr", &epoch_yr),
+                ("pm_ra_mas_yr", &pm_ra_mas_yr),
+                ("pm_dec_mas_yr", &pm_dec_mas_yr),
+                ("parallax_mas", &parallax_mas),
+                ("radial_velocity_km_s", &radial_velocity_km_s),
+            ])?;
+        let columns = CatalogColumns {
+            ra_deg,
+            dec_deg,
+            epoch_yr,
+            pm_ra_mas_yr,
+            pm_dec_mas_yr,
+            parallax_mas,
+            radial_velocity_km_s,
+        };
+        Ok(Catalog { rows: py.detach(|| astrometry::Catalog::new(&columns)).map_err(raise)? })
+    }
+
+    fn __len__(&self) -> usize {
+        self.rows.len()
+    }
+
+    /// The status of each row.
+    #[getter]
+    fn status<'py>(&self, py: Python<'py>) -> Bound<'py, PyArray1<u8>> {
+        column(py, codes(self.rows.status()))
+    }
+}
+
+/// Bodies of the solar system, and where they are from.
+#[pyclass(frozen, module = "hourarc._engine")]
+pub struct Bodies {
+    /// Which.
+    pub bodies: Vec<Body>,
+    /// Their positions.
+    pub ephemeris: Ephemeris,
+}
+
+#[pymethods]
+impl Bodies {
+    #[new]
+    fn new(words: Vec<String>) -> PyResult<Self> {
+        let bodies =
+            words.iter().map(|word| Body::from_word(word)).collect::<Result<_, _>>().map_err(raise)?;
+        Ok(Bodies { bodies, ephemeris: Ephemeris::default() })
+    }
+
+    fn __len__(&self) -> usize {
+        self.bodies.len()
+    }
+}
+
+/// What every verb takes as its targets.
+#[derive(FromPyObject)]
+pub enum Targets<'py> {
+    /// Catalogue places.
+    Catalog(Bound<'py, Catalog>),
+    /// Bodies of the solar system.
+    Bodies(Bound<'py, Bodies>),
+}
+
+impl Targets<'_> {
+    /// As the core takes them.
+    pub fn rows(&self) -> astrometry::Targets<'_> {
+        match self {
+            Targets::Catalog(catalog) => astrometry::Targets::Catalog(&catalog.get().rows),
+            Targets::Bodies(bodies) => astrometry::Targets::Bodies(&bodies.get().bodies),
+        }
+    }
+
+    /// The ephemeris they ask for.
+    pub fn ephemeris(&self) -> Ephemeris {
+        match self {
+            Targets::Catalog(_) => Ephemeris::default(),
+            Targets::Bodies(bodies) => bodies.get().ephemeris.clone(),
+        }
+    }
+}
