@@ -103,7 +103,7 @@ def test_airmass_models_end_a_window_where_they_say(model, zenith_distance, publ
     # A window limited by airmass_max closes where the altitude is the published one, in the model's sense.
     site = hourarc.Site(0.0, 0.0, 0.0)
     topocentric, observed, _ = altitude_pairs(site)
-    star = hourarc.Catalog([100.0], [0.0])
+    star = hourarc.Catalog([280.0], [0.0])  # opposite the Sun of the day
     for z, airmass in zip(zenith_distance, published, strict=True):
         limits = hourarc.Limits(
             altitude_min_deg=-5.0, airmass_max=airmass, airmass_model=model, sun_altitude_max_deg=90.0

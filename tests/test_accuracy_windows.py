@@ -3,9 +3,19 @@
 import hourarc
 import numpy as np
 import pytest
-from bridge import TablePole, catalog, nanoseconds, random_directions, site, windows_of
+from bridge import (
+    TablePole,
+    altitude_pairs,
+    catalog,
+    nanoseconds,
+    random_directions,
+    reasons,
+    site,
+    windows_of,
+)
 from oracle import clock, windows
-from oracle.place import Observer, Stars
+from oracle.place import Observer, Sky, Stars
+from oracle.roots import grid_times
 
 SHORT_NS = (
     25_000_000_000  # a window (or gap) the sampling may pass over: none such is expected with these seeds
@@ -86,9 +96,6 @@ def test_what_blocks_a_star_without_a_window(nights):
     # A limit that blocks must be one that alone leaves nothing, where there is such a one.
     count = 0
     pole = TablePole()
-    from bridge import reasons
-    from oracle.place import Sky
-    from oracle.roots import grid_times
 
     for number, (observer, stars, margins, ours, _) in enumerate(nights):
         start = int(clock.nanoseconds(NIGHTS[number][1]))
@@ -109,7 +116,6 @@ def test_what_blocks_a_star_without_a_window(nights):
 
 def test_best_airmass_is_at_the_highest_altitude(nights):
     pole, count = TablePole(), 0
-    from oracle.place import Sky
 
     for observer, stars, _, ours, _ in nights:
         for target in range(0, len(stars), 10):
@@ -130,3 +136,37 @@ def test_best_airmass_is_at_the_highest_altitude(nights):
                 assert airmass == pytest.approx(1.0 / np.sin(np.radians(altitude[-1])), rel=0.01)
                 count += 1
     assert count > 15
+
+
+@pytest.mark.parametrize(
+    ("limits", "reason"),
+    [
+        ({"altitude_min_deg": 15.0}, "altitude_min"),
+        ({"altitude_min_deg": None, "airmass_max": 2.5}, "airmass_max"),
+    ],
+)
+def test_windows_through_the_air(limits, reason):
+    # Limits are on observed altitudes: brute force on the topocentric altitude that refracts into the limit.
+    observer, pole = Observer(-17.9, 28.8, 2390.0), TablePole()
+    here = hourarc.Site(observer.longitude_deg, observer.latitude_deg, observer.height_m)
+    topocentric, observed, airmass = altitude_pairs(here)
+    if reason == "airmass_max":
+        threshold = np.interp(-2.5, -airmass, topocentric)
+    else:
+        threshold = np.interp(15.0, observed, topocentric)
+    stars = Stars(*random_directions(np.random.default_rng(3), 150))
+    start = int(clock.nanoseconds("2026-11-01T13:11"))
+    stop = start + clock.DAY_NS
+    ours = hourarc.windows(here, catalog(stars), *clock.datetime([start, stop]), hourarc.Limits(**limits))
+    margins = windows.Margins(
+        altitude_min_deg=threshold, sun_altitude_max_deg=-18.0, sun_separation_min_deg=30.0
+    )
+    theirs = windows.windows(observer, pole, stars, start, stop, margins, step_s=60.0)
+    assert len(theirs) == len(ours.start) > 60
+    named = {"altitude_min": reason}
+    for window in theirs:
+        edges = [w for w in windows_of(ours, window.target) if abs(w[0] - window.start_ns) < 20e6]
+        assert len(edges) == 1, window
+        assert abs(edges[0][1] - window.stop_ns) < 20e6
+        assert edges[0][2] == named.get(window.start_reason, window.start_reason)
+        assert edges[0][3] == named.get(window.stop_reason, window.stop_reason)

@@ -4,6 +4,8 @@ An instant is an int64: nanoseconds since 1970-01-01 counting 86,400 s a day, as
 A two-part date is (whole Modified Julian Day + 2400000.5, fraction), each part exact to 1e-11 s.
 """
 
+import warnings
+
 import erfa
 import numpy as np
 
@@ -34,7 +36,10 @@ def tai_minus_utc_s(utc_ns):
     """TAI−UTC from ERFA's own table of leap seconds and 1960–1972 rates."""
     day, second = split(utc_ns)
     year, month, date, _ = erfa.jd2cal(day, 0.0)
-    return erfa.dat(year, month, date, second / 86_400.0)
+    with warnings.catch_warnings():
+        # "dubious year" only says that the leap seconds of the future are unknown.
+        warnings.simplefilter("ignore", erfa.ErfaWarning)
+        return erfa.dat(year, month, date, second / 86_400.0)
 
 
 def tai(utc_ns):

@@ -57,7 +57,7 @@ def table(which):
     mjd = np.array(rows["MJD"].value, dtype=float)
     out = {"mjd": mjd}
     if which == "finals2000A":
-        names = {"dut1_s": "UT1_UTC_A", "xp_arcsec": "PM_X_A", "yp_arcsec": "PM_Y_A"}
+        names = {"dut1_s": "UT1_UTC_A", "xp_arcsec": "PM_x_A", "yp_arcsec": "PM_y_A"}
         names |= {"dx_mas": "dX_2000A_A", "dy_mas": "dY_2000A_A"}
         units = {
             "dut1_s": "s",
