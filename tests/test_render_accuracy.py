@@ -60,7 +60,7 @@ def test_figures_are_rounded_up(value, text):
 def test_a_gate_holds():
     figures = Figures()
     figures.hold("refraction_horizon", 0.09, 1)
-    with pytest.raises(AssertionError, match="gate 0.1"):
+    with pytest.raises(AssertionError, match=r"gate 0\.1"):
         figures.hold("refraction_horizon", 0.11, 1)
     with pytest.raises(AssertionError, match="only 0 cases"):
         figures.hold("refraction_horizon", 0.0, 0)
