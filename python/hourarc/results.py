@@ -84,8 +84,8 @@ COLUMNS: Mapping[str, Column] = {
     "dark_hours_moonless": Column("h", "time.duration", "the same, with the Moon below the horizon"),
     # Earth orientation
     "ut1_minus_utc_s": Column("s", "time.scale", "UT1 - UTC"),
-    "xp_arcsec": Column("arcsec", "pos.eop", "coordinate x of the pole"),
-    "yp_arcsec": Column("arcsec", "pos.eop", "coordinate y of the pole"),
+    "xp_arcsec": Column("arcsec", "pos.angDistance;pos.eop", "coordinate x of the pole"),
+    "yp_arcsec": Column("arcsec", "pos.angDistance;pos.eop", "coordinate y of the pole"),
     "dx_mas": Column("mas", "pos.nutation", "celestial pole offset dX"),
     "dy_mas": Column("mas", "pos.nutation", "celestial pole offset dY"),
     "ut1_error_s": Column("s", "stat.error;time.scale", "error of UT1 - UTC"),
