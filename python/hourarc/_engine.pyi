@@ -14,6 +14,32 @@ _Floats = NDArray[np.float64]
 _Nanoseconds = NDArray[np.int64]
 _Bytes = NDArray[np.uint8]
 
+__all__ = [
+    "Bodies",
+    "Catalog",
+    "Orientation",
+    "Site",
+    "airmass_model_words",
+    "almanac",
+    "bias_precession_nutation",
+    "body_words",
+    "debug_build",
+    "event_status_words",
+    "first_bad_status",
+    "instruction_set",
+    "place",
+    "position_angle",
+    "precession_nutation",
+    "reason_words",
+    "rise_transit_set",
+    "rotation_angle",
+    "separation",
+    "sidereal_time",
+    "status_words",
+    "version",
+    "windows",
+]
+
 version: str
 debug_build: bool
 first_bad_status: int
