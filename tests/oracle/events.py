@@ -9,7 +9,9 @@ from .place import Sky
 
 RISE, TRANSIT, SET = 0, 1, 2
 EARTH_EQUATORIAL_RADIUS_KM = 6378.137  # WGS 84
-MOON_RADIUS_KM = 1737.4  # IAU WGCCRE 2015 (Archinal et al. 2018)
+# The Moon's limb in the almanacs: 0.2725076 equatorial radii of the Earth (IAU 1982; Urban & Seidelmann 2013,
+# table 11.1). The mean radius of the body, 1737.4 km, is 0.37″ less: up to 0.4 s of moonrise at 70°.
+MOON_RADIUS_KM = 0.2725076 * EARTH_EQUATORIAL_RADIUS_KM
 ASTRONOMICAL_UNIT_KM = 149_597_870.7
 
 
