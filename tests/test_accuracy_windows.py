@@ -178,3 +178,22 @@ def test_windows_through_the_air(limits, reason):
         assert abs(edges[0][1] - window.stop_ns) < 20e6
         assert edges[0][2] == named.get(window.start_reason, window.start_reason)
         assert edges[0][3] == named.get(window.stop_reason, window.stop_reason)
+
+
+def test_windows_of_moon_and_planets():
+    # Bodies move through their own limits: three days, the Moon and Venus near the Sun among them.
+    observer, pole = Observer(-17.9, 28.8, 2390.0), TablePole()
+    bodies = ["moon", "venus", "mars", "jupiter", "saturn"]
+    start = int(clock.nanoseconds("2026-09-14T13:11"))
+    stop = start + 3 * clock.DAY_NS
+    limits = {"altitude_min_deg": 10.0, "sun_altitude_max_deg": -4.0, "sun_separation_min_deg": 45.0}
+    ours = hourarc.windows(
+        site(observer), hourarc.Bodies(bodies), *clock.datetime([start, stop]), hourarc.Limits(**limits)
+    )
+    theirs = windows.windows(observer, pole, bodies, start, stop, windows.Margins(**limits), step_s=60.0)
+    mine = [(i, *window) for i in range(len(bodies)) for window in windows_of(ours, i)]
+    assert len(mine) == len(theirs) >= 6
+    for (target, begin, end, opens, closes), other in zip(mine, theirs, strict=True):
+        assert (target, opens, closes) == (other.target, other.start_reason, other.stop_reason)
+        assert abs(begin - other.start_ns) < 20e6 and abs(end - other.stop_ns) < 20e6
+    print([(bodies[w[0]], w[3], w[4]) for w in mine])

@@ -313,3 +313,27 @@ def test_a_span_across_a_leap_second_keeps_sidereal_time():
     assert sum(leap) == 1
     for gap, stepped in zip(gaps, leap, strict=True):
         assert gap == pytest.approx(86_164.09 - (1.0 if stepped else 0.0), abs=0.1)
+
+
+def test_past_the_orientation_table_the_error_says_so():
+    # IERS Bulletin A: UT1 is uncertain by 0.00025·d^0.75 s after d days; d is past 2900 in 2036.
+    star, here = hourarc.Catalog(120.0, 10.0), site(Observer(0.0, 40.0))
+    start = np.datetime64("2036-01-10T00:00:00", "ns")
+    found = hourarc.rise_transit_set(here, star, start, start + DAY)
+    assert sorted(kinds_of(found)) == ["rise", "set", "transit"]
+    assert np.all(found.computed_error_s > 0.00025 * 2900**0.75)
+    assert np.all(found.computed_error_s < 1.0)
+    assert found.row_status_words[0] == "orientation_extrapolated"
+    now = hourarc.rise_transit_set(here, star, DATE, DATE + DAY)
+    assert np.all(now.computed_error_s < 0.001)
+    assert now.row_status_words[0] == "ok"
+
+
+@pytest.mark.parametrize(
+    ("date", "word"), [("1959-12-30", "before_utc"), ("2120-01-01", "outside_ephemeris")]
+)
+def test_outside_the_years_covered_a_row_says_why(date, word):
+    here, start = site(Observer(0.0, 40.0)), np.datetime64(date, "ns")
+    places = hourarc.place(here, hourarc.Bodies(["mars"]), start)
+    assert places.status_words[0] == word
+    assert np.isnan(places.altitude_deg[0])

@@ -5,7 +5,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from . import roots
-from .place import Sky
+from .place import Sky, local_grid, local_pairs
 
 RISE, TRANSIT, SET = 0, 1, 2
 EARTH_EQUATORIAL_RADIUS_KM = 6378.137  # WGS 84
@@ -31,18 +31,10 @@ class _Field:
         self.observer, self.pole, self.targets, self.feed = observer, pole, targets, feed
 
     def grid(self, times):
-        sky = Sky(self.observer, times, self.pole, feed=self.feed)
-        return sky.bodies(self.targets) if isinstance(self.targets, list) else sky.stars(self.targets)
+        return local_grid(Sky(self.observer, times, self.pole, feed=self.feed), self.targets)
 
     def pairs(self, times, column):
-        sky = Sky(self.observer, times, self.pole, feed=self.feed)
-        if not isinstance(self.targets, list):
-            return sky.stars(self.targets.take(column), pairwise=True)
-        from .place import Local
-
-        every = sky.bodies(self.targets)
-        row = np.arange(len(times))
-        return Local(*(getattr(every, f)[row, column] for f in Local.__dataclass_fields__))
+        return local_pairs(Sky(self.observer, times, self.pole, feed=self.feed), self.targets, column)
 
 
 def rise_transit_set(observer, pole, targets, start_ns, stop_ns, altitude_deg, *, feed="de440", step_s=60.0):

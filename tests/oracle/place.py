@@ -193,6 +193,19 @@ class Sky:
         return Local(np.pi / 2 - zenith_distance, azimuth, hour_angle, right_ascension, declination)
 
 
+def local_grid(sky, targets):
+    """(instants, targets) of `Stars` or of a list of body names."""
+    return sky.bodies(targets) if isinstance(targets, list) else sky.stars(targets)
+
+
+def local_pairs(sky, targets, column):
+    """Target `column[i]` at instant i."""
+    if not isinstance(targets, list):
+        return sky.stars(targets.take(column), pairwise=True)
+    every, row = sky.bodies(targets), np.arange(len(column))
+    return Local(*(getattr(every, f)[row, column] for f in Local.__dataclass_fields__))
+
+
 def separation(one, other):
     """Angle between two sets of unit vectors, exact from 0 to π."""
     return erfa.sepp(one, other)

@@ -8,7 +8,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from . import roots
-from .place import Sky, separation
+from .place import Sky, local_grid, local_pairs, separation
 
 
 @dataclass(frozen=True)
@@ -61,27 +61,27 @@ class Window:
     stop_reason: str
 
 
-def windows(observer, pole, stars, start_ns, stop_ns, margins, *, step_s=10.0, feed="de440"):
-    """All windows of at least one sample, sorted by target and start; edges to 64 ns."""
+def windows(observer, pole, targets, start_ns, stop_ns, margins, *, step_s=10.0, feed="de440"):
+    """All windows of `Stars` or body names of at least one sample, by target and start; edges to 64 ns."""
     times = roots.grid_times(start_ns, stop_ns, step_s)
     sky = Sky(observer, times, pole, feed=feed)
-    values = margins.evaluate(sky, sky.stars(stars), slice(None))
+    values = margins.evaluate(sky, local_grid(sky, targets), slice(None))
     names = list(values)
     stack = np.stack([values[name] for name in names])
     least = stack.min(axis=0)
 
     def pairs(t, column):
-        return _at(observer, pole, stars, margins, names, t, column, feed).min(axis=0)
+        return _at(observer, pole, targets, margins, names, t, column, feed).min(axis=0)
 
     root, column, direction = roots.sign_changes(None, pairs, times, values=least)
     # The limit at an edge is the one that fails just outside it.
     outside = root - direction * 1_000_000
     fails = (
-        _at(observer, pole, stars, margins, names, outside, column, feed) if len(root) else np.empty((1, 0))
+        _at(observer, pole, targets, margins, names, outside, column, feed) if len(root) else np.empty((1, 0))
     )
     reason = np.array(names, dtype=object)[np.argmin(fails, axis=0)] if len(root) else []
     found = []
-    for target in range(len(stars)):
+    for target in range(len(targets)):
         mine = np.nonzero(column == target)[0]
         begin = (int(start_ns), "span") if least[0, target] > 0.0 else None
         for i in mine:
@@ -95,7 +95,7 @@ def windows(observer, pole, stars, start_ns, stop_ns, margins, *, step_s=10.0, f
     return found
 
 
-def _at(observer, pole, stars, margins, names, times, column, feed):
+def _at(observer, pole, targets, margins, names, times, column, feed):
     sky = Sky(observer, times, pole, feed=feed)
-    values = margins.evaluate(sky, sky.stars(stars.take(column), pairwise=True), column)
+    values = margins.evaluate(sky, local_pairs(sky, targets, column), column)
     return np.stack([values[name] for name in names])
