@@ -26,12 +26,8 @@ fn main() {
     let refraction = Refraction::new(&atmosphere, site.latitude(), 2600.0).unwrap();
     let orientation = Orientation::constant(LeapSeconds::builtin(), 0.05, 1e-6, 2e-6, 0.0, 0.0);
     let ephemeris = Ephemeris::default();
-    let observer = Observer {
-        site: &site,
-        refraction: &refraction,
-        orientation: &orientation,
-        ephemeris: &ephemeris,
-    };
+    let observer =
+        Observer { site: &site, refraction: &refraction, orientation: &orientation, ephemeris: &ephemeris };
     let catalog = random_stars();
     let targets = Targets::Catalog(&catalog);
     let start = Utc::from_mjd(61_109.0, 0.5 + 70.4 / 360.0);

@@ -100,11 +100,13 @@ struct Timeline {
 }
 
 impl Timeline {
-    fn extend(&mut self, day: usize, series: &Chebyshev<BODY_NODES>) {
+    /// Appends a day; `up` says whether the thing is up at its beginning and at its end, by the same
+    /// computation for the end of one day and the beginning of the next.
+    fn extend(&mut self, day: usize, series: &Chebyshev<BODY_NODES>, up: [bool; 2]) {
         if day == 0 {
-            self.up_at_start = series.value(0.0) >= 0.0;
+            self.up_at_start = up[0];
         }
-        for crossing in series.crossings().iter() {
+        for crossing in series.crossings_between(up[0], up[1]).iter() {
             self.changes.push(Crossing { at: day as f64 + crossing.at, rising: crossing.rising });
         }
     }
@@ -140,14 +142,17 @@ impl Passages {
         for (index, arc) in days.arcs.iter().enumerate() {
             let skies = arc.skies::<BODY_NODES>()?;
             let sun: Vec<f64> = directions_at(arc, &skies, Body::Sun)?.iter().map(|local| local[2]).collect();
+            let sun_at_ends = directions_at(arc, &[arc.sky(0.0)?, arc.sky(1.0)?], Body::Sun)?;
             for (timeline, altitude_deg) in passages.sun.iter_mut().zip(SUN_ALTITUDES_DEG) {
                 let threshold = (altitude_deg * RADIANS_PER_DEGREE).sin();
-                timeline.extend(index, &series(|j| sun[j] - threshold));
+                let up = [0, 1].map(|end: usize| sun_at_ends[end][2] >= threshold);
+                timeline.extend(index, &series(|j| sun[j] - threshold), up);
             }
             let moon = (0..BODY_NODES)
                 .map(|j| moon_above_its_horizon(arc, node_fraction::<BODY_NODES>(j)))
                 .collect::<std::result::Result<Vec<f64>, Status>>()?;
-            passages.moon.extend(index, &series(|j| moon[j]));
+            let up = [moon_above_its_horizon(arc, 0.0)? >= 0.0, moon_above_its_horizon(arc, 1.0)? >= 0.0];
+            passages.moon.extend(index, &series(|j| moon[j]), up);
         }
         Ok(passages)
     }

@@ -24,7 +24,9 @@ use crate::ephemeris::Body;
 use crate::error::Status;
 use crate::horizon::Latitude;
 use crate::math::chebyshev::{Chebyshev, ChebyshevVector, node};
-use crate::math::vector::{Matrix, Vector, add, add_scaled, product, rotate, rotation_3, scale, sub};
+use crate::math::vector::{
+    Matrix, Vector, add, add_scaled, product, rotate, rotate_back, rotation_3, scale, sub,
+};
 use crate::time::{Instant, Tai, Tt};
 
 /// What a star's arc leaves out, radians: the sum of the terms in the module's text, 20° from the Sun
@@ -60,9 +62,13 @@ pub struct Arc<'a> {
     /// Angle of rotation at the three nodes, unwrapped, and coefficients of powers of the day's fraction.
     rotation_angle: [f64; 3],
     rotation: [f64; 3],
-    /// From the rotated axes to the horizon at the three nodes, and coefficients.
-    horizon_at: [Matrix; 3],
+    /// From the rotated axes to the horizon: at the middle of the day, and coefficients.
+    horizon_at_middle: Matrix,
     horizon: [Matrix; 3],
+    /// From the CIRS to the horizon at the beginning and the end, from the nodes themselves.
+    ends: [Matrix; 2],
+    /// The horizontal plane.
+    zenith: Plane,
     /// Third differences of the celestial intermediate pole over the day: X and Y of the track less
     /// the quadratics are these times u (u − ½)(u − 1).
     bend: [f64; 2],
@@ -126,8 +132,11 @@ impl<'a> Arc<'a> {
             ((quarter[axis] - smooth(0.25)) - (three_quarters[axis] - smooth(0.75))) * 64.0 / 6.0
         });
         let position = observer.site.terrestrial();
+        let end = |i: usize| product(&horizon_at[i], &rotation_3(centre[i].rotation_angle));
         Ok(Arc {
             bend,
+            ends: [end(0), end(2)],
+            zenith: Plane::of(&horizon_at[1], [0.0, 0.0, 1.0]),
             observer,
             day,
             note,
@@ -137,7 +146,7 @@ impl<'a> Arc<'a> {
             centre: [centre[0], centre[1], centre[2]],
             rotation_angle,
             rotation: quadratic(rotation_angle),
-            horizon_at,
+            horizon_at_middle: horizon_at[1],
             horizon,
             diurnal_aberration: EARTH_ROTATION_RAD_PER_S * position[0].hypot(position[1])
                 / SPEED_OF_LIGHT_M_S,
@@ -195,6 +204,13 @@ impl<'a> Arc<'a> {
         product(&turned, &[[1.0, 0.0, -x], [0.0, 1.0, -y], [x, y, 1.0]])
     }
 
+    /// Direction of a star in the CIRS of the Earth's centre at one of the three nodes: one chain.
+    #[inline(always)]
+    fn cirs_at(&self, node: usize, star: &Star) -> Vector {
+        let sky = &self.centre[node];
+        rotate(&sky.intermediate, star_direction(star, sky))
+    }
+
     /// Where the intermediate pole stands beyond its quadratic, radians.
     #[inline(always)]
     fn bend_at(&self, fraction: f64) -> [f64; 2] {
@@ -209,6 +225,17 @@ impl<'a> Arc<'a> {
         [cirs[0] - x * cirs[2], cirs[1] - y * cirs[2], cirs[2] + x * cirs[0] + y * cirs[1]]
     }
 
+    /// A plane through the observer, given by its normal on the horizon, for
+    /// [`DayPath::plane_crossings`](super::DayPath::plane_crossings).
+    pub fn plane(&self, normal: Vector) -> Plane {
+        Plane::of(&self.horizon_at_middle, normal)
+    }
+
+    /// The horizontal plane.
+    pub fn zenith(&self) -> &Plane {
+        &self.zenith
+    }
+
     fn angle(&self, fraction: f64) -> f64 {
         self.rotation[0] + fraction * (self.rotation[1] + fraction * self.rotation[2])
     }
@@ -218,6 +245,24 @@ impl<'a> Arc<'a> {
     pub(super) fn with_diurnal_aberration(&self, local: Vector) -> Vector {
         let shrink = 1.0 - self.diurnal_aberration * local[1];
         [local[0] * shrink, local[1] * shrink + self.diurnal_aberration, local[2] * shrink]
+    }
+}
+
+/// A plane through the observer that turns with the Earth: the horizon, a vertical circle, an hour circle.
+#[derive(Debug, Clone, Copy)]
+pub struct Plane {
+    /// Unit normal on the horizon: north, east, zenith.
+    pub normal: Vector,
+    /// Longitude of the normal on the rotating axes, and its components along the pole and across it.
+    longitude: f64,
+    along_pole: f64,
+    across_pole: f64,
+}
+
+impl Plane {
+    fn of(horizon_at_middle: &Matrix, normal: Vector) -> Self {
+        let [x, y, z] = rotate_back(horizon_at_middle, normal);
+        Plane { normal, longitude: y.atan2(x), along_pole: z, across_pole: x.hypot(y) }
     }
 }
 
@@ -233,25 +278,61 @@ pub struct StarArc {
     direction: [Vector; 3],
     /// The direction at the end of the day.
     last: Vector,
+    circle: Circle,
+}
+
+/// The circle that a star describes, at the middle of a day, on the intermediate pole.
+#[derive(Debug, Clone, Copy)]
+struct Circle {
+    right_ascension: f64,
+    /// Rate of the hour angle a day.
+    rate: f64,
+    sin_declination: f64,
+    /// Zero for a star so near the pole that it has no hour angle.
+    cos_declination: f64,
 }
 
 impl StarArc {
     /// Three chains.
     #[inline(always)]
     pub fn new(arc: &Arc<'_>, star: &Star) -> Self {
-        let at = [0, 1, 2].map(|i| {
-            let sky: &Sky = &arc.centre[i];
-            rotate(&sky.intermediate, star_direction(star, sky))
-        });
+        Self::through(arc, [arc.cirs_at(0, star), arc.cirs_at(1, star), arc.cirs_at(2, star)])
+    }
+
+    /// The same star on the day after: two chains, and the same bits as [`StarArc::new`], because the
+    /// end of one day is the beginning of the next.
+    #[inline(always)]
+    pub fn on_the_next_day(&self, arc: &Arc<'_>, star: &Star) -> Self {
+        Self::through(arc, [self.last, arc.cirs_at(1, star), arc.cirs_at(2, star)])
+    }
+
+    #[inline(always)]
+    fn through(arc: &Arc<'_>, at: [Vector; 3]) -> Self {
         let first = scale(-3.0, at[0]);
-        StarArc {
-            direction: [
-                at[0],
-                sub(add_scaled(first, 4.0, at[1]), at[2]),
-                scale(2.0, sub(add(at[0], at[2]), scale(2.0, at[1]))),
-            ],
-            last: at[2],
-        }
+        let direction = [
+            at[0],
+            sub(add_scaled(first, 4.0, at[1]), at[2]),
+            scale(2.0, sub(add(at[0], at[2]), scale(2.0, at[1]))),
+        ];
+        let (middle, drift) = (at[1], sub(at[2], at[0]));
+        let across_squared = middle[0] * middle[0] + middle[1] * middle[1];
+        let circle = if across_squared >= 1e-16 {
+            let right_ascension_rate = (middle[0] * drift[1] - middle[1] * drift[0]) / across_squared;
+            Circle {
+                right_ascension: middle[1].atan2(middle[0]),
+                rate: arc.rotation[1] + arc.rotation[2] - right_ascension_rate,
+                sin_declination: middle[2],
+                cos_declination: across_squared.sqrt(),
+            }
+        } else {
+            Circle {
+                right_ascension: 0.0,
+                rate: arc.rotation[1],
+                sin_declination: middle[2],
+                cos_declination: 0.0,
+            }
+        };
+        StarArc { direction, last: at[2], circle }
     }
 
     /// Direction in the CIRS of the Earth's centre, the arc's bend not applied.
@@ -295,49 +376,52 @@ impl StarArc {
     /// Direction on the horizon at the beginning (`end` false) or the end of the day, from the node
     /// itself: the end of one day and the beginning of the next are the same bits, so no change of
     /// sign falls between two days or into both.
+    #[inline(always)]
     pub fn local_at_end(&self, arc: &Arc<'_>, end: bool) -> Vector {
-        let (node, cirs) = if end { (2, self.last) } else { (0, self.direction[0]) };
-        let (sin, cos) = arc.centre[node].rotation_angle.sin_cos();
-        let turned = [cos * cirs[0] + sin * cirs[1], cos * cirs[1] - sin * cirs[0], cirs[2]];
-        arc.with_diurnal_aberration(rotate(&arc.horizon_at[node], turned))
+        let (matrix, cirs) = if end { (&arc.ends[1], self.last) } else { (&arc.ends[0], self.direction[0]) };
+        arc.with_diurnal_aberration(rotate(matrix, cirs))
     }
 
-    /// Local hour angle at the middle of the day, radians in −π to π, its rate per day, and the sine
-    /// and cosine of the declination, all in the frame of the intermediate pole.
-    ///
-    /// None when the star is so near the pole that it has no hour angle.
-    pub(super) fn hour_angle_at_middle(&self, arc: &Arc<'_>) -> Option<MiddleOfDay> {
-        let cirs = self.cirs(0.5);
-        let drift = add(self.direction[1], self.direction[2]);
-        let equatorial_squared = cirs[0] * cirs[0] + cirs[1] * cirs[1];
-        if equatorial_squared.is_nan() || equatorial_squared < 1e-16 {
-            return None;
+    /// The sine of the declination of date on the intermediate pole, at the middle of the day.
+    pub fn sin_declination(&self) -> f64 {
+        self.circle.sin_declination
+    }
+
+    /// How the star moves with respect to a plane, from its circle. None when it is so near the pole
+    /// that it has no hour angle.
+    #[inline(always)]
+    pub(super) fn motion(&self, arc: &Arc<'_>, plane: &Plane) -> Option<Motion> {
+        let circle = &self.circle;
+        // NaN must not pass for a star with an hour angle.
+        if circle.cos_declination > 0.0 {
+            let angle = arc.rotation_angle[1] + plane.longitude - circle.right_ascension;
+            let angle = angle - TURN * (angle / TURN).round();
+            Some(Motion {
+                highest: 0.5 - angle / circle.rate,
+                half_turn: std::f64::consts::PI / circle.rate,
+                rate: circle.rate,
+                middle: plane.along_pole * circle.sin_declination,
+                swing: plane.across_pole * circle.cos_declination,
+            })
+        } else {
+            None
         }
-        let zenith = arc.horizon_at[1][2];
-        let longitude = zenith[1].atan2(zenith[0]);
-        let right_ascension = cirs[1].atan2(cirs[0]);
-        let right_ascension_rate = (cirs[0] * drift[1] - cirs[1] * drift[0]) / equatorial_squared;
-        let angle = arc.rotation_angle[1] + longitude - right_ascension;
-        Some(MiddleOfDay {
-            hour_angle: angle - TURN * (angle / TURN).round(),
-            rate: arc.rotation[1] + arc.rotation[2] - right_ascension_rate,
-            sin_declination: cirs[2],
-            cos_declination: equatorial_squared.sqrt(),
-            sin_latitude: zenith[2],
-            cos_latitude: zenith[0].hypot(zenith[1]),
-        })
     }
 }
 
-/// A star on the circle it describes, at the middle of a day.
+/// Distance of a star from a plane during a day, in the sine: `middle + swing · cos(rate · (t − highest))`.
+///
+/// Left out, 2e-6: diurnal aberration, the change of the star's circle and of the pole during half a day.
 #[derive(Debug, Clone, Copy)]
-pub(super) struct MiddleOfDay {
-    pub hour_angle: f64,
+pub(super) struct Motion {
+    /// Fraction of the day of a culmination above the plane, in −0.01 to 1.01.
+    pub highest: f64,
+    /// Days from there to the culmination below.
+    pub half_turn: f64,
+    /// Radians a day.
     pub rate: f64,
-    pub sin_declination: f64,
-    pub cos_declination: f64,
-    pub sin_latitude: f64,
-    pub cos_latitude: f64,
+    pub middle: f64,
+    pub swing: f64,
 }
 
 /// A body of the solar system during one day: its topocentric direction on the horizon.
@@ -345,6 +429,9 @@ pub(super) struct MiddleOfDay {
 pub struct BodyArc {
     /// North, east, zenith over the fraction of the day.
     pub local: ChebyshevVector<BODY_NODES, 3>,
+    /// At the beginning and at the end of the day, from the chain itself: the end of one day and the
+    /// beginning of the next are the same bits.
+    pub ends: [Vector; 2],
 }
 
 impl BodyArc {
@@ -354,7 +441,9 @@ impl BodyArc {
     /// [`Status::OutsideEphemeris`].
     pub fn new(arc: &Arc<'_>, skies: &[Sky], body: Body) -> std::result::Result<Self, Status> {
         let directions = directions_at(arc, skies, body)?;
-        Ok(BodyArc { local: series_of(&directions) })
+        let ends = [arc.sky(0.0)?, arc.sky(1.0)?];
+        let ends = directions_at(arc, &ends, body)?;
+        Ok(BodyArc { local: series_of(&directions), ends: [ends[0], ends[1]] })
     }
 
     /// The series of one component: 0 north, 1 east, 2 zenith.

@@ -7,17 +7,19 @@
 //! it or the site stands at a pole, and for bodies, which move as they please, the crossings are
 //! those of a Chebyshev series over the day, isolated in the Bernstein basis: none can be missed.
 
-use super::arc::{Arc, BodyArc, MiddleOfDay, StarArc};
+use super::arc::{Arc, BodyArc, Motion, Plane, StarArc};
 pub use crate::math::bernstein::Crossing;
 use crate::math::chebyshev::Chebyshev;
 use crate::math::roots::newton_between;
-use crate::math::vector::{Matrix, rotate};
+use crate::math::vector::{Matrix, Vector, dot, rotate};
 use std::f64::consts::PI;
 
 /// A Newton step below this, in days, is the last: 8.6 µs, and the step after it would be its square.
 const LAST_STEP_D: f64 = 1e-10;
 /// A culmination within this of the threshold, in the sine of the altitude, is a grazing: 2 mas.
 const GRAZING: f64 = 1e-8;
+/// Farther from the threshold than this, the star's circle tells the sign of a culmination.
+const CLEAR: f64 = 1e-4;
 /// Below this diurnal range of the sine of the altitude (20″) a day has no shape of its own.
 const FLAT: f64 = 1e-4;
 /// Coefficients of a star's altitude over a day: J_k(π) is below 1e-16 from the 22nd.
@@ -38,15 +40,31 @@ pub trait DayPath {
     fn local(&self, arc: &Arc<'_>, fraction: f64) -> [f64; 3];
     /// The same with its rate per day.
     fn local_and_rate(&self, arc: &Arc<'_>, fraction: f64) -> ([f64; 3], [f64; 3]);
-    /// Appends the crossings of an altitude, given by its sine, in [0, 1), ascending. Returns whether
-    /// the target is at or above it at the beginning of the day.
-    fn altitude_crossings(&self, arc: &Arc<'_>, sin_threshold: f64, crossings: &mut Vec<Crossing>) -> bool;
+    /// Direction on the horizon at the beginning (`end` false) or the end of the day: the end of one day
+    /// and the beginning of the next are the same bits.
+    fn local_at_end(&self, arc: &Arc<'_>, end: bool) -> [f64; 3];
+    /// Appends the instants in [0, 1), ascending, at which the target passes a circle: where the sine of
+    /// its distance from `plane` changes from below `sin_threshold` to at or above it, or back. Returns
+    /// whether it is at or above it at the beginning of the day. Crossings before or after `within` may
+    /// be off by minutes, but stay outside it.
+    fn plane_crossings(
+        &self,
+        arc: &Arc<'_>,
+        plane: &Plane,
+        sin_threshold: f64,
+        within: (f64, f64),
+        crossings: &mut Vec<Crossing>,
+    ) -> bool;
+    /// The same for an altitude, given by its sine, over the whole day.
+    fn altitude_crossings(&self, arc: &Arc<'_>, sin_threshold: f64, crossings: &mut Vec<Crossing>) -> bool {
+        self.plane_crossings(arc, arc.zenith(), sin_threshold, (0.0, 1.0), crossings)
+    }
     /// Appends the passages of the meridian in [0, 1), ascending.
     fn culminations(&self, arc: &Arc<'_>, culminations: &mut Vec<Culmination>);
     /// The same as [`DayPath::local`] for a caller who holds the rotation from the CIRS to the horizon.
     fn local_by(&self, arc: &Arc<'_>, fraction: f64, cirs_to_horizon: &Matrix) -> [f64; 3];
-    /// Appends the instants in [0, 1) at which the altitude is greatest, ascending.
-    fn highest(&self, arc: &Arc<'_>, at: &mut Vec<f64>);
+    /// Appends the instants in (from, to) at which the altitude is greatest, ascending.
+    fn highest(&self, arc: &Arc<'_>, from: f64, to: f64, at: &mut Vec<f64>);
     /// How far the target may move among the stars in half a day, radians.
     fn reach(&self) -> f64;
     /// What the path leaves out of the exact chain, radians.
@@ -64,32 +82,43 @@ impl DayPath for StarArc {
         StarArc::local_and_rate(self, arc, fraction)
     }
 
-    fn altitude_crossings(&self, arc: &Arc<'_>, sin_threshold: f64, crossings: &mut Vec<Crossing>) -> bool {
-        let at_start = self.local_at_end(arc, false)[2] - sin_threshold;
-        let at_stop = self.local_at_end(arc, true)[2] - sin_threshold;
-        let middle = self.hour_angle_at_middle(arc);
-        let shaped = middle.filter(|m| m.cos_latitude * m.cos_declination > FLAT);
-        let grazed = match shaped {
-            Some(middle) => {
-                let pieces = Pieces { path: self, arc, middle, sin_threshold, at_start, at_stop };
-                pieces.crossings(crossings)
+    #[inline]
+    fn local_at_end(&self, arc: &Arc<'_>, end: bool) -> [f64; 3] {
+        StarArc::local_at_end(self, arc, end)
+    }
+
+    fn plane_crossings(
+        &self,
+        arc: &Arc<'_>,
+        plane: &Plane,
+        sin_threshold: f64,
+        within: (f64, f64),
+        crossings: &mut Vec<Crossing>,
+    ) -> bool {
+        let above = |local: Vector| dot(plane.normal, local) >= sin_threshold;
+        let above_at_start = above(StarArc::local_at_end(self, arc, false));
+        let above_at_stop = above(StarArc::local_at_end(self, arc, true));
+        let motion = self.motion(arc, plane).filter(|motion| motion.swing > FLAT);
+        let grazed = match motion {
+            Some(motion) => {
+                let pieces = Pieces { path: self, arc, plane, motion, sin_threshold, within };
+                pieces.crossings(above_at_start, above_at_stop, crossings)
             }
             None => true,
         };
         if grazed {
-            let series =
-                Chebyshev::<NODES>::fit(0.0, 1.0, |fraction| self.local(arc, fraction)[2] - sin_threshold);
-            crossings.extend_from_slice(&series.crossings());
+            let series = Chebyshev::<NODES>::fit(0.0, 1.0, |fraction| {
+                dot(plane.normal, self.local(arc, fraction)) - sin_threshold
+            });
+            crossings.extend_from_slice(&series.crossings_between(above_at_start, above_at_stop));
         }
-        at_start >= 0.0
+        above_at_start
     }
 
     fn culminations(&self, arc: &Arc<'_>, culminations: &mut Vec<Culmination>) {
-        let Some(middle) = self.hour_angle_at_middle(arc) else {
+        let Some(Motion { half_turn, highest: upper, .. }) = self.motion(arc, arc.zenith()) else {
             return;
         };
-        let half_turn = PI / middle.rate;
-        let upper = 0.5 - middle.hour_angle / middle.rate;
         let east_at = [self.local_at_end(arc, false)[1], self.local_at_end(arc, true)[1]];
         for k in -2..=2 {
             let is_upper = k % 2 == 0;
@@ -111,12 +140,22 @@ impl DayPath for StarArc {
     }
 
     /// A star is highest on the meridian: its own motion shifts the instant by microseconds.
-    fn highest(&self, arc: &Arc<'_>, at: &mut Vec<f64>) {
-        let mut culminations = Vec::with_capacity(4);
-        DayPath::culminations(self, arc, &mut culminations);
-        at.extend(
-            culminations.iter().filter(|culmination| culmination.upper).map(|culmination| culmination.at),
-        );
+    fn highest(&self, arc: &Arc<'_>, from: f64, to: f64, at: &mut Vec<f64>) {
+        let Some(motion) = self.motion(arc, arc.zenith()) else {
+            return;
+        };
+        let turn = 2.0 * motion.half_turn;
+        // The rate of a star near the pole changes during the day: leave room for Newton to move.
+        let room = if motion.swing > FLAT { 1e-2 } else { 0.1 };
+        for k in -1..=1 {
+            let guess = motion.highest + f64::from(k) * turn;
+            if guess > from - room && guess < to + room {
+                let found = self.meridian(arc, guess);
+                if found > from && found < to {
+                    at.push(found);
+                }
+            }
+        }
     }
 
     /// Aberration, precession and deflection move no star by as much as this.
@@ -160,65 +199,82 @@ impl StarArc {
     }
 }
 
-/// A day divided by the culminations of a star.
+/// A day divided by the culminations of a star above and below a plane.
 struct Pieces<'a> {
     path: &'a StarArc,
     arc: &'a Arc<'a>,
-    middle: MiddleOfDay,
+    plane: &'a Plane,
+    motion: Motion,
     sin_threshold: f64,
-    at_start: f64,
-    at_stop: f64,
+    within: (f64, f64),
 }
 
 impl Pieces<'_> {
     /// Appends the crossings; `true`, and nothing appended, when the star grazes the threshold.
-    fn crossings(&self, crossings: &mut Vec<Crossing>) -> bool {
+    fn crossings(&self, above_at_start: bool, above_at_stop: bool, crossings: &mut Vec<Crossing>) -> bool {
         let before = crossings.len();
-        let m = &self.middle;
-        let half_turn = PI / m.rate;
-        let cos_hour_angle =
-            (self.sin_threshold - m.sin_latitude * m.sin_declination) / (m.cos_latitude * m.cos_declination);
-        let to_crossing = cos_hour_angle.clamp(-1.0, 1.0).acos() / m.rate;
+        let Motion { highest, half_turn, rate, middle, swing } = self.motion;
+        let over = [middle + swing - self.sin_threshold, middle - swing - self.sin_threshold];
+        // Never or always above: nothing to solve, unless an end says otherwise, which it cannot.
+        if (over[0] < -CLEAR || over[1] > CLEAR) && above_at_start == above_at_stop {
+            return false;
+        }
+        let cos_hour_angle = ((self.sin_threshold - middle) / swing).clamp(-1.0, 1.0);
+        let to_crossing = cos_hour_angle.acos() / rate;
+        // Where the circle is crossed steeply the guess is good to minutes.
+        let steep = swing * swing * (1.0 - cos_hour_angle * cos_hour_angle) > 1e-3;
         // The last culmination at or before the beginning of the day.
-        let upper = 0.5 - m.hour_angle / m.rate;
-        let mut k = -(upper / half_turn).ceil();
-        let mut left = upper + k * half_turn;
-        let (mut from, mut at_from) = (0.0, self.at_start);
+        let mut k = -(highest / half_turn).ceil();
+        let mut left = highest + k * half_turn;
+        let (mut from, mut above_from) = (0.0, above_at_start);
         loop {
             let left_is_upper = k.rem_euclid(2.0) == 0.0;
             let right = left + half_turn;
             let to = right.min(1.0);
-            let at_to = if right < 1.0 { self.value(right) } else { self.at_stop };
-            if right < 1.0 && at_to.abs() < GRAZING {
-                crossings.truncate(before);
-                return true;
-            }
-            if (at_from < 0.0) != (at_to < 0.0) {
-                let rising = at_from < 0.0;
+            let above_to = if right < 1.0 {
+                let expected = over[usize::from(left_is_upper)];
+                let found = if expected.abs() > CLEAR { expected } else { self.value(right) };
+                if found.abs() < GRAZING {
+                    crossings.truncate(before);
+                    return true;
+                }
+                found >= 0.0
+            } else {
+                above_at_stop
+            };
+            if above_from != above_to {
                 let guess = if left_is_upper { left + to_crossing } else { right - to_crossing };
-                let at = newton_between(
-                    |fraction| {
-                        let (local, rate) = self.path.local_and_rate(self.arc, fraction);
-                        (local[2] - self.sin_threshold, rate[2])
-                    },
-                    from,
-                    to,
-                    rising,
-                    guess.clamp(from, to),
-                    LAST_STEP_D,
-                );
-                crossings.push(Crossing { at: at.min(1.0 - f64::EPSILON), rising });
+                let at = self.crossing(guess.clamp(from, to), steep, from, to, above_to);
+                crossings.push(Crossing { at: at.min(1.0 - f64::EPSILON), rising: above_to });
             }
             if right >= 1.0 {
                 return false;
             }
-            (left, from, at_from) = (right, to, at_to);
+            (left, from, above_from) = (right, to, above_to);
             k += 1.0;
         }
     }
 
+    fn crossing(&self, guess: f64, steep: bool, from: f64, to: f64, rising: bool) -> f64 {
+        const FAR: f64 = 0.01;
+        if steep && (guess < self.within.0 - FAR || guess > self.within.1 + FAR) {
+            return guess;
+        }
+        newton_between(
+            |fraction| {
+                let (local, rate) = self.path.local_and_rate(self.arc, fraction);
+                (dot(self.plane.normal, local) - self.sin_threshold, dot(self.plane.normal, rate))
+            },
+            from,
+            to,
+            rising,
+            guess,
+            LAST_STEP_D,
+        )
+    }
+
     fn value(&self, fraction: f64) -> f64 {
-        self.path.local(self.arc, fraction)[2] - self.sin_threshold
+        dot(self.plane.normal, self.path.local(self.arc, fraction)) - self.sin_threshold
     }
 }
 
@@ -231,15 +287,28 @@ impl DayPath for BodyArc {
         self.local.value_and_rate(fraction)
     }
 
-    fn altitude_crossings(&self, _: &Arc<'_>, sin_threshold: f64, crossings: &mut Vec<Crossing>) -> bool {
-        let series = self.component(2).plus(-sin_threshold);
-        crossings.extend_from_slice(&series.crossings());
-        series.value(0.0) >= 0.0
+    fn local_at_end(&self, _: &Arc<'_>, end: bool) -> [f64; 3] {
+        self.ends[usize::from(end)]
+    }
+
+    fn plane_crossings(
+        &self,
+        _: &Arc<'_>,
+        plane: &Plane,
+        sin_threshold: f64,
+        _: (f64, f64),
+        crossings: &mut Vec<Crossing>,
+    ) -> bool {
+        let series = self.local.dot(plane.normal).plus(-sin_threshold);
+        let above = |local: Vector| dot(plane.normal, local) >= sin_threshold;
+        let above_at_start = above(self.ends[0]);
+        crossings.extend_from_slice(&series.crossings_between(above_at_start, above(self.ends[1])));
+        above_at_start
     }
 
     fn culminations(&self, arc: &Arc<'_>, culminations: &mut Vec<Culmination>) {
-        let east = self.component(1);
-        for crossing in east.crossings().iter() {
+        let [start, stop] = self.ends.map(|local| local[1] >= 0.0);
+        for crossing in self.component(1).crossings_between(start, stop).iter() {
             let local = self.local.value(crossing.at);
             let towards_equator = local[2] * arc.latitude.cos - local[0] * arc.latitude.sin;
             culminations.push(Culmination { at: crossing.at, upper: towards_equator > 0.0 });
@@ -250,9 +319,10 @@ impl DayPath for BodyArc {
         self.local.value(fraction)
     }
 
-    fn highest(&self, _: &Arc<'_>, at: &mut Vec<f64>) {
+    fn highest(&self, _: &Arc<'_>, from: f64, to: f64, at: &mut Vec<f64>) {
         let rate = self.component(2).derivative();
-        at.extend(rate.crossings().iter().filter(|crossing| !crossing.rising).map(|crossing| crossing.at));
+        let inside = |crossing: &&Crossing| !crossing.rising && crossing.at > from && crossing.at < to;
+        at.extend(rate.crossings().iter().filter(inside).map(|crossing| crossing.at));
     }
 
     /// No bound is known for a body, so none is used.

@@ -9,7 +9,7 @@ mod scatter;
 
 pub use almanac::{AlmanacRow, almanac, night_bounds};
 pub use arc::{
-    Arc, BODY_ARC_ERROR_RAD, BODY_NODES, BodyArc, SEPARATION_NODES, STAR_ARC_ERROR_RAD, StarArc,
+    Arc, BODY_ARC_ERROR_RAD, BODY_NODES, BodyArc, Plane, SEPARATION_NODES, STAR_ARC_ERROR_RAD, StarArc,
     directions_at, node_fraction,
 };
 pub use crossing::{Crossing, Culmination, DayPath};

@@ -267,10 +267,10 @@ impl<'a> LimitedSpan<'a> {
         if left.is_empty() {
             return;
         }
-        highest.clear();
-        path.highest(arc, highest);
         for interval in left.iter() {
-            let inside = highest.iter().copied().filter(|at| (interval.start..interval.stop).contains(at));
+            highest.clear();
+            path.highest(arc, interval.start, interval.stop, highest);
+            let inside = highest.iter().copied();
             let mut best = (interval.start, f64::NEG_INFINITY);
             for at in [interval.start, interval.stop].into_iter().chain(inside) {
                 let sin_altitude = path.local(arc, at)[2];
