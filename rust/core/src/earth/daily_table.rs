@@ -2,7 +2,7 @@
 //!
 //! Tested through [`super::Orientation`], in its file.
 
-use super::extrapolation::{CHANNELS, Extrapolation};
+use super::extrapolation::{CHANNELS, Extrapolation, ut1_growth_s};
 use super::iers_tables::Row;
 use super::orientation::{Pole, Provenance, Quality, Source};
 use super::spline::{piece, second_derivatives};
@@ -160,7 +160,7 @@ impl Table {
             yp,
             dx,
             dy,
-            ut1_error_s: knot.ut1_error_s + 0.000_25 * d.powf(0.75),
+            ut1_error_s: knot.ut1_error_s + ut1_growth_s(d),
             pole_error: knot.pole_error + 0.000_68 * d.powf(0.80) * RADIANS_PER_ARCSECOND,
             quality: Quality::Extrapolated,
         }
