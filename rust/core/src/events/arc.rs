@@ -27,13 +27,15 @@ use crate::math::chebyshev::{Chebyshev, ChebyshevVector, node};
 use crate::math::vector::{
     Matrix, Vector, add, add_scaled, product, rotate, rotate_back, rotation_3, scale, sub,
 };
-use crate::time::{Instant, Tai, Tt};
+use crate::time::{Instant, Tai, Tt, Utc};
 
 /// What a star's arc leaves out, radians: the sum of the terms in the module's text, 20° from the Sun
 /// or farther it is half of that.
 pub const STAR_ARC_ERROR_RAD: f64 = 70.0 * RADIANS_PER_MICROARCSECOND;
 /// Error of the compact ephemeris in direction, radians, as its tests hold it.
 pub const BODY_ARC_ERROR_RAD: f64 = RADIANS_PER_MILLIARCSECOND;
+
+const NANOSECONDS_PER_DAY: f64 = SECONDS_PER_DAY * 1e9;
 
 /// Coefficients of a body's Chebyshev series over a day. The fastest term is the rotation of the
 /// Earth, whose coefficients fall as the Bessel functions J_k(π): below 1e-16 from the 22nd.
@@ -49,6 +51,9 @@ pub struct Arc<'a> {
     pub observer: Observer<'a>,
     /// MJD of the day's beginning, TT.
     pub day: i64,
+    /// UTC at the day's beginning when it runs as TAI does throughout the day: no leap second, and not
+    /// before 1972. None otherwise.
+    pub utc_at_start: Option<Utc>,
     /// The worst that is to be said of the Earth orientation during the day.
     pub note: Status,
     /// Error of UT1 and of the pole during the day.
@@ -139,6 +144,7 @@ impl<'a> Arc<'a> {
             zenith: Plane::of(&horizon_at[1], [0.0, 0.0, 1.0]),
             observer,
             day,
+            utc_at_start: steady_utc(&observer, instant(0), instant(2)),
             note,
             ut1_error_s,
             pole_error,
@@ -157,6 +163,20 @@ impl<'a> Arc<'a> {
     /// The instant at a fraction of the day.
     pub fn instant(&self, fraction: f64) -> Instant<Tai> {
         Instant::<Tt>::from_mjd(self.day as f64, 0.0).to_tai().plus_seconds(fraction * SECONDS_PER_DAY)
+    }
+
+    /// The instant, UTC, at a fraction of the day, 0 to 1.
+    #[inline]
+    pub fn utc(&self, fraction: f64) -> Utc {
+        match self.utc_at_start {
+            // Half a nanosecond and the cut of the conversion: rounded to the nearest.
+            Some(start) => start.plus_nanoseconds((fraction * NANOSECONDS_PER_DAY + 0.5) as i64),
+            // A day within the ephemeris and after the span's start has a UTC.
+            None => {
+                let leap_seconds = self.observer.orientation.leap_seconds();
+                leap_seconds.to_utc(self.instant(fraction)).map_or(Utc::NOT_A_TIME, |utc| utc.0)
+            }
+        }
     }
 
     /// The fraction of the day at an instant; outside 0 to 1 for one outside the day.
@@ -246,6 +266,14 @@ impl<'a> Arc<'a> {
         let shrink = 1.0 - self.diurnal_aberration * local[1];
         [local[0] * shrink, local[1] * shrink + self.diurnal_aberration, local[2] * shrink]
     }
+}
+
+fn steady_utc(observer: &Observer<'_>, start: Instant<Tai>, stop: Instant<Tai>) -> Option<Utc> {
+    let leap_seconds = observer.orientation.leap_seconds();
+    let (start, _) = leap_seconds.to_utc(start).ok()?;
+    let (stop, inside_leap_second) = leap_seconds.to_utc(stop).ok()?;
+    let steady = stop.nanoseconds() - start.nanoseconds() == NANOSECONDS_PER_DAY as i64;
+    (steady && !inside_leap_second).then_some(start)
 }
 
 /// A plane through the observer that turns with the Earth: the horizon, a vertical circle, an hour circle.
@@ -395,7 +423,7 @@ impl StarArc {
         // NaN must not pass for a star with an hour angle.
         if circle.cos_declination > 0.0 {
             let angle = arc.rotation_angle[1] + plane.longitude - circle.right_ascension;
-            let angle = angle - TURN * (angle / TURN).round();
+            let angle = angle - TURN * whole(angle / TURN);
             Some(Motion {
                 highest: 0.5 - angle / circle.rate,
                 half_turn: std::f64::consts::PI / circle.rate,
@@ -407,6 +435,14 @@ impl StarArc {
             None
         }
     }
+}
+
+/// The nearest whole number to one that is small, without a call on any processor: adding 1.5 · 2⁵² leaves no
+/// room for a fraction.
+#[inline(always)]
+fn whole(x: f64) -> f64 {
+    const SHIFT: f64 = 6_755_399_441_055_744.0;
+    (x + SHIFT) - SHIFT
 }
 
 /// Distance of a star from a plane during a day, in the sine: `middle + swing · cos(rate · (t − highest))`.

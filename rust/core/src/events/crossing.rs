@@ -224,11 +224,15 @@ impl Pieces<'_> {
         // Where the circle is crossed steeply the guess is good to minutes.
         let steep = swing * swing * (1.0 - cos_hour_angle * cos_hour_angle) > 1e-3;
         // The last culmination at or before the beginning of the day.
-        let mut k = -(highest / half_turn).ceil();
-        let mut left = highest + k * half_turn;
+        let (mut left, mut left_is_upper) = (highest, true);
+        while left > 0.0 {
+            (left, left_is_upper) = (left - half_turn, !left_is_upper);
+        }
+        while left + half_turn <= 0.0 {
+            (left, left_is_upper) = (left + half_turn, !left_is_upper);
+        }
         let (mut from, mut above_from) = (0.0, above_at_start);
         loop {
-            let left_is_upper = k.rem_euclid(2.0) == 0.0;
             let right = left + half_turn;
             let to = right.min(1.0);
             let above_to = if right < 1.0 {
@@ -250,8 +254,7 @@ impl Pieces<'_> {
             if right >= 1.0 {
                 return false;
             }
-            (left, from, above_from) = (right, to, above_to);
-            k += 1.0;
+            (left, left_is_upper, from, above_from) = (right, !left_is_upper, to, above_to);
         }
     }
 

@@ -119,10 +119,9 @@ impl<'a> Days<'a> {
     }
 
     /// The instant, UTC, at a fraction of a day.
+    #[inline]
     pub fn utc(&self, arc: &Arc<'_>, fraction: f64) -> Utc {
-        let tai = arc.instant(fraction);
-        // A day within the ephemeris and after the span's start has a UTC.
-        self.observer().orientation.leap_seconds().to_utc(tai).map_or(Utc::NOT_A_TIME, |utc| utc.0)
+        arc.utc(fraction)
     }
 
     /// A star on one of the days.
