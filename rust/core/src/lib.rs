@@ -6,10 +6,10 @@
 //!
 //! Modules stand in one order, and a module may use only those above it:
 //! `error`, `constants` → `math` → `time` → `earth` → `ephemeris` → `site`, `refraction` →
-//! `astrometry` → `horizon` → `events` → `windows` → `grid`. `tests/structure.rs` holds them to it.
+//! `astrometry` → `horizon` → `events` → `windows` → `grid`. `tests/structure` holds them to it.
 
-pub mod constants;
 pub mod error;
+pub mod constants;
 pub mod math;
 pub mod time;
 pub mod earth;
