@@ -1,6 +1,7 @@
-"""Write earth_attitude.csv, earth_tdb.csv and earth_tai_utc.csv: the Earth's attitude and the time scales by pyerfa.
+"""Write earth_attitude.csv, earth_tdb.csv and earth_tai_utc.csv: Earth attitude and time scales by pyerfa.
 
-Run from this folder: ``python make_earth.py``. Fixed seeds; pyerfa 2.0.1.5 (ERFA 2.0.1) wrote what is committed.
+Run from this folder: ``python make_earth.py``. Fixed seeds; pyerfa 2.0.1.5 (ERFA 2.0.1) wrote what is
+committed.
 """
 
 import csv

@@ -16,7 +16,7 @@ FIRST_NIGHT, LAST_NIGHT = datetime.date(1900, 1, 1), datetime.date(2100, 12, 31)
 FILE = click.Path(exists=True, dir_okay=False, readable=True, path_type=Path)
 
 
-class Night(click.ParamType):
+class Night(click.ParamType):  # type: ignore[type-arg, unused-ignore]  # generic in new releases only
     """The date of a night's evening, such as 2026-03-10."""
 
     name = "date"

@@ -29,9 +29,10 @@ def plan_night(
     quiet: bool,
 ) -> int:
     """Plans one night and returns the exit code. `output` may be "-": CSV to standard output."""
-    import hourarc
     import numpy as np
     import pyarrow as pa
+
+    import hourarc
 
     from ..errors import HourarcWarning
     from ..io.plan import read_plan

@@ -96,4 +96,5 @@ def trimmed(raw: pa.Array, missing: tuple[str, ...]) -> pa.Array:
 def is_text(kind: pa.DataType) -> bool:
     import pyarrow as pa
 
-    return pa.types.is_string(kind) or pa.types.is_large_string(kind) or pa.types.is_string_view(kind)
+    types = pa.types
+    return bool(types.is_string(kind) or types.is_large_string(kind) or types.is_string_view(kind))

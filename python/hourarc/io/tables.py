@@ -265,7 +265,7 @@ def _single_spaces(data: bytes) -> bytes:
     at_start[:1] = True
     at_start[1:] = squeezed[:-1] == 10
     squeezed = np.where(squeezed == 9, np.uint8(32), squeezed)[~(blank & at_start)]
-    return squeezed.tobytes()
+    return bytes(squeezed.tobytes())
 
 
 def _after_comments(data: bytes) -> int:

@@ -1,4 +1,4 @@
-"""Derive the polynomial coefficients of the elementary functions, and the reference values they are tested with.
+"""Derive the polynomial coefficients of the elementary functions, and the values they are tested with.
 
     python rust/tables/elementary/make_elementary.py            # writes both files
     python rust/tables/elementary/make_elementary.py --check    # fails if either differs
@@ -12,10 +12,10 @@ Each function is written as a leading term and a correction t^m P(t), t the squa
     asin x = x + x t A(t)               |x| <= 1/2
     atan x = x + x t B(t)               |x| <= tan(pi/8)
 
-P minimises the largest error of the *function*, relative to it, by the exchange of Remez (1934): the error of the best
-polynomial of n coefficients takes its largest size with alternating sign at n + 1 points. The coefficients are then
-rounded to doubles one by one from the lowest, and the rest fitted anew after each, so that rounding one is made up
-for by the others.
+P minimises the largest error of the *function*, relative to it, by the exchange of Remez (1934): the error
+of the best polynomial of n coefficients takes its largest size with alternating sign at n + 1 points. The
+coefficients are then rounded to doubles one by one from the lowest, and the rest fitted anew after each, so
+that rounding one is made up for by the others.
 """
 
 import random
@@ -73,8 +73,10 @@ def rounded(target, weight, n, top):
     """n coefficients that are doubles, and the largest weighted error they leave."""
     fixed = []
     while len(fixed) < n:
+
         def rest(t, fixed=tuple(fixed)):
             return target(t) - sum(c * t**j for j, c in enumerate(fixed))
+
         coefficients, _ = remez(rest, weight, list(range(len(fixed), n)), top)
         fixed.append(mpf(float(coefficients[0])))
     grid = [top * mpf(i) / 2000 for i in range(1, 2001)]
@@ -82,12 +84,13 @@ def rounded(target, weight, n, top):
     return fixed, worst
 
 
-# name: (correction P, weight of its error in the relative error of the function, largest t, numbers of coefficients)
+# name: (correction P, weight of its error in the relative error of the function, largest t, numbers of
+# coefficients)
 SQUARE = (pi / 4 * mpf("1.00001")) ** 2
 
 
 def of_square(function):
-    """The correction of an odd function, and the weight of its error in the relative error of the function."""
+    """The correction of an odd function, and the weight of its error in the function's relative error."""
     return lambda t: (function(sqrt(t)) / sqrt(t) - 1) / t, lambda t: t * sqrt(t) / function(sqrt(t))
 
 
@@ -118,7 +121,8 @@ def coefficients_file():
         "",
         "//! Minimax polynomials of the elementary functions, and constants in parts.",
         "//!",
-        "//! Lowest power first, in t, the square of the reduced argument; the script above says how they were made.",
+        "//! Lowest power first, in t, the square of the reduced argument; "
+        "the script above says how they were made.",
         "",
     ]
     for name, (target, weight, top, sizes) in POLYNOMIALS.items():
@@ -134,7 +138,8 @@ def coefficients_file():
     second = cut(pi / 2 - first, 36)
     third = mpf(float(pi / 2 - first - second))
     lines += [
-        "/// π/2 in parts of 36, 36 and 53 bits: products of the first two with whole numbers below 2¹⁷ are exact.",
+        "/// π/2 in parts of 36, 36 and 53 bits: "
+        "products of the first two with whole numbers below 2¹⁷ are exact.",
         f"pub(super) const HALF_PI: [f64; 3] = [{literal(first)}, {literal(second)}, {literal(third)}];",
         "",
         "/// What the double nearest to π lacks.",
@@ -159,9 +164,13 @@ def reference_file():
         arguments = (mpf(x),) if y is None else (mpf(y), mpf(x))
         rows.append(",".join([name, repr(x), repr(y) if y is not None else "", *two(function(*arguments))]))
 
-    angles = [generator.uniform(-1e5, 1e5) for _ in range(150)] + [generator.uniform(-7, 7) for _ in range(100)]
+    angles = [generator.uniform(-1e5, 1e5) for _ in range(150)] + [
+        generator.uniform(-7, 7) for _ in range(100)
+    ]
     # The doubles nearest to multiples of pi/4, where reduction cancels most, and small ones.
-    angles += [float(k * pi / 4) for k in [*range(-20, 21), 63661 * 2, 103993, 127323, *range(4000, 120000, 4001)]]
+    angles += [
+        float(k * pi / 4) for k in [*range(-20, 21), 63661 * 2, 103993, 127323, *range(4000, 120000, 4001)]
+    ]
     angles += [generator.choice([-1, 1]) * 10.0 ** generator.uniform(-30, 0) for _ in range(40)]
     for x in angles:
         add("sin", sin, x)
