@@ -6,7 +6,7 @@
 //! source distribution of pyerfa 2.0.1.5:
 //!
 //! ```sh
-//! pip download --no-binary :all: --no-deps pyerfa==2.0.1.5 && tar xzf pyerfa-2.0.1.5.tar.gz
+//! pip download --no-binary pyerfa --no-deps pyerfa==2.0.1.5 && tar xzf pyerfa-2.0.1.5.tar.gz
 //! cargo run -p hourarc-tables -- iau --source pyerfa-2.0.1.5
 //! ```
 //!
