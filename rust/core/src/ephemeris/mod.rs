@@ -33,6 +33,7 @@ pub mod body;
 mod chebyshev;
 pub mod compact;
 mod daf;
+pub mod orbits;
 pub mod photometry;
 pub mod spk;
 
