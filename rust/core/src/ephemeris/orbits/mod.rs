@@ -10,10 +10,12 @@
 //! - [`mpc`] reads the Minor Planet Center's lines; [`designation`] its packed names.
 //! - [`advance`] carries orbits to another epoch under the pull of the Sun, the Moon and the planets.
 //! - [`drift`] says how far two-body motion may be off.
+pub mod advance;
 pub mod designation;
 pub mod drift;
 pub mod elements;
 
+pub mod gauss_radau;
 pub mod kepler;
 pub mod mpc;
 
