@@ -96,7 +96,7 @@ GATES = {
         500,
     ),
     "published_times": Gate(
-        "sunrise, sunset and seasons",
+        "sunrise and sunset",
         "published almanac times, printed to the minute",
         30.0,
         "s",
