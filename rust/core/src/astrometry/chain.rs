@@ -16,15 +16,24 @@ use crate::ephemeris::{Body, Ephemeris};
 use crate::error::Status;
 use crate::math::vector::{Vector, add_scaled, norm, scale, sub, unit};
 
+/// Direction of a star before light is bent: space motion and parallax, a unit vector on the axes of the
+/// ICRS from a barycentric position (au) at an instant (Julian years after J2000.0).
+///
+/// For callers who follow many stars over weeks: it changes so slowly that it may be interpolated.
+#[inline(always)]
+pub fn coordinate_direction(star: &Star, epoch_yr: f64, observer_au: Vector) -> Vector {
+    let years = epoch_yr - star.epoch_yr + light_travel_lead_yr(star.position, observer_au);
+    let barycentric = add_scaled(star.position, years, star.motion);
+    unit(from_observer(barycentric, star.parallax, observer_au))
+}
+
 /// Proper direction of a star: unit vector, GCRS axes, as the observer of `sky` sees it.
 ///
 /// Error: below 5 µas against the IAU chain with its own Earth series and below 2 µas with the same
 /// Earth, farther than 5° from the Sun (`tests/test_accuracy_place.py`). NaN in, NaN out.
 #[inline(always)]
 pub fn star_direction(star: &Star, sky: &Sky) -> Vector {
-    let years = sky.epoch_yr - star.epoch_yr + light_travel_lead_yr(star.position, sky.observer_au);
-    let barycentric = add_scaled(star.position, years, star.motion);
-    let coordinate = unit(from_observer(barycentric, star.parallax, sky.observer_au));
+    let coordinate = coordinate_direction(star, sky.epoch_yr, sky.observer_au);
     let natural = deflected(coordinate, coordinate, sky.sun_to_observer, sky.sun_distance_au);
     aberrated(natural, sky.velocity_c, sky.inverse_gamma, sky.sun_distance_au)
 }

@@ -16,7 +16,7 @@ pub mod targets;
 pub mod track;
 
 pub use catalog::{Catalog, CatalogColumns, Star, StarColumns};
-pub use chain::{BodyDirection, body_direction, star_direction};
-pub use sky::{Observer, Sky};
+pub use chain::{BodyDirection, body_direction, coordinate_direction, star_direction};
+pub use sky::{Celestial, Observer, Sky};
 pub use targets::Targets;
-pub use track::Track;
+pub use track::{Node, Track, TrackPlan};

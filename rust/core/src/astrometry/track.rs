@@ -47,16 +47,21 @@ pub fn node_instant(node: i64) -> Instant<Tt> {
     Instant::from_mjd(day, node as f64 / NODES_PER_DAY - day)
 }
 
-impl Track {
+/// The nodes that a track needs, in order, to be computed by whoever has threads.
+#[derive(Debug, Clone)]
+pub struct TrackPlan {
+    intervals: Vec<i64>,
+    nodes: Vec<i64>,
+}
+
+impl TrackPlan {
     /// A track over the span from `start` to `stop`, both included.
-    pub fn over(start: Instant<Tai>, stop: Instant<Tai>, ephemeris: &Ephemeris) -> Self {
-        let first = locate(start.to_tt()).0;
-        let last = locate(stop.to_tt()).0;
-        Self::of_intervals((first..=last).collect(), ephemeris)
+    pub fn over(start: Instant<Tai>, stop: Instant<Tai>) -> Self {
+        Self::of_intervals((locate(start.to_tt()).0..=locate(stop.to_tt()).0).collect())
     }
 
     /// A track that covers each of the instants and nothing else.
-    pub fn through(instants: impl Iterator<Item = Instant<Tai>>, ephemeris: &Ephemeris) -> Self {
+    pub fn through(instants: impl Iterator<Item = Instant<Tai>>) -> Self {
         let mut intervals: Vec<i64> = Vec::new();
         for instant in instants {
             let interval = locate(instant.to_tt()).0;
@@ -66,19 +71,74 @@ impl Track {
         }
         intervals.sort_unstable();
         intervals.dedup();
-        Self::of_intervals(intervals, ephemeris)
+        Self::of_intervals(intervals)
     }
 
-    fn of_intervals(intervals: Vec<i64>, ephemeris: &Ephemeris) -> Self {
-        let mut nodes = NodeWindow::default();
-        let mut pieces = Vec::with_capacity(intervals.len());
-        let mut outside = Vec::with_capacity(intervals.len());
+    fn of_intervals(intervals: Vec<i64>) -> Self {
+        let mut nodes = Vec::with_capacity(intervals.len() + POINTS);
         for &interval in &intervals {
-            let piece = nodes.around(interval, ephemeris).map(|samples| polynomial(&samples));
-            outside.push(piece.is_err());
-            pieces.push(piece.unwrap_or([[f64::NAN; Celestial::CHANNELS]; POINTS]));
+            let first = nodes.last().map_or(i64::MIN, |last: &i64| last + 1).max(interval - BEFORE);
+            nodes.extend(first..interval - BEFORE + POINTS as i64);
         }
-        Track { intervals, pieces, outside }
+        TrackPlan { intervals, nodes }
+    }
+
+    /// Number of nodes.
+    pub fn len(&self) -> usize {
+        self.nodes.len()
+    }
+
+    /// Whether no instant was asked for.
+    pub fn is_empty(&self) -> bool {
+        self.nodes.is_empty()
+    }
+
+    /// Computes one node.
+    pub fn node(&self, index: usize, ephemeris: &Ephemeris) -> Node {
+        Node(Celestial::exact(node_instant(self.nodes[index]), ephemeris).map(Celestial::to_channels))
+    }
+
+    /// The track, from its nodes in order.
+    pub fn finish(self, nodes: &[Node]) -> Track {
+        let mut pieces = Vec::with_capacity(self.intervals.len());
+        let mut outside = Vec::with_capacity(self.intervals.len());
+        let mut at = 0;
+        for &interval in &self.intervals {
+            at += self.nodes[at..].partition_point(|&node| node < interval - BEFORE);
+            let mut samples = [[f64::NAN; Celestial::CHANNELS]; POINTS];
+            let mut good = true;
+            for (sample, node) in samples.iter_mut().zip(&nodes[at..]) {
+                match node.0 {
+                    Ok(channels) => *sample = channels,
+                    Err(_) => good = false,
+                }
+            }
+            outside.push(!good);
+            pieces.push(polynomial(&samples));
+        }
+        Track { intervals: self.intervals, pieces, outside }
+    }
+
+    /// The track, its nodes computed one after the other.
+    pub fn compute(self, ephemeris: &Ephemeris) -> Track {
+        let nodes: Vec<Node> = (0..self.len()).map(|index| self.node(index, ephemeris)).collect();
+        self.finish(&nodes)
+    }
+}
+
+/// A node of a track: what was computed there, or why nothing could be.
+#[derive(Debug, Clone, Copy)]
+pub struct Node(std::result::Result<Channels, Status>);
+
+impl Track {
+    /// A track over the span from `start` to `stop`, both included.
+    pub fn over(start: Instant<Tai>, stop: Instant<Tai>, ephemeris: &Ephemeris) -> Self {
+        TrackPlan::over(start, stop).compute(ephemeris)
+    }
+
+    /// A track that covers each of the instants and nothing else.
+    pub fn through(instants: impl Iterator<Item = Instant<Tai>>, ephemeris: &Ephemeris) -> Self {
+        TrackPlan::through(instants).compute(ephemeris)
     }
 
     /// What is known of an instant before anyone stands anywhere, interpolated.
@@ -136,36 +196,6 @@ impl Track {
             worst = worst.max(pole + velocity);
         }
         worst
-    }
-}
-
-/// The nodes last computed: neighbouring intervals share five of six.
-#[derive(Default)]
-struct NodeWindow {
-    known: Vec<(i64, std::result::Result<Channels, Status>)>,
-}
-
-impl NodeWindow {
-    fn around(
-        &mut self,
-        interval: i64,
-        ephemeris: &Ephemeris,
-    ) -> std::result::Result<[Channels; POINTS], Status> {
-        let first = interval - BEFORE;
-        self.known.retain(|known| known.0 >= first);
-        let mut samples = [[0.0; Celestial::CHANNELS]; POINTS];
-        for (sample, node) in samples.iter_mut().zip(first..) {
-            let known = self.known.iter().find(|known| known.0 == node).map(|known| known.1);
-            *sample = match known {
-                Some(value) => value?,
-                None => {
-                    let value = Celestial::exact(node_instant(node), ephemeris).map(Celestial::to_channels);
-                    self.known.push((node, value));
-                    value?
-                }
-            };
-        }
-        Ok(samples)
     }
 }
 

@@ -3,6 +3,8 @@
 //! Threads are started for each call and gone when it returns (50 µs for two): nothing is left behind
 //! that a fork could break, and there is no pool to configure.
 
+use crate::astrometry::{Node, Track, TrackPlan};
+use crate::ephemeris::Ephemeris;
 use crate::error::{Error, Result};
 use crate::math::dispatch::Isa;
 use std::sync::atomic::{AtomicBool, AtomicUsize, Ordering};
@@ -11,6 +13,9 @@ use std::time::Duration;
 
 /// How often the caller is asked whether to go on.
 const ASK_EVERY: Duration = Duration::from_millis(40);
+
+/// Nodes of a track a block: 0.3 ms of work.
+const NODES_A_BLOCK: usize = 8;
 
 /// For callers who never want to stop.
 pub const KEEP_GOING: fn() -> bool = || true;
@@ -79,6 +84,22 @@ impl<'a> Workers<'a> {
             }
         });
         if stop.into_inner() { Err(Error::interrupted()) } else { Ok(()) }
+    }
+
+    /// A track, its nodes shared out.
+    ///
+    /// # Errors
+    /// When the caller said to stop.
+    pub fn track(&mut self, plan: TrackPlan, ephemeris: &Ephemeris) -> Result<Track> {
+        let mut nodes = vec![None; plan.len()];
+        let blocks = nodes.chunks_mut(NODES_A_BLOCK).enumerate().collect();
+        self.for_each(blocks, |(block, nodes): (usize, &mut [Option<Node>])| {
+            for (index, node) in (block * NODES_A_BLOCK..).zip(nodes) {
+                *node = Some(plan.node(index, ephemeris));
+            }
+        })?;
+        let nodes: Option<Vec<Node>> = nodes.into_iter().collect();
+        Ok(plan.finish(&nodes.ok_or_else(Error::interrupted)?))
     }
 
     fn alone<T>(&mut self, items: Vec<T>, work: impl Fn(T)) -> Result<()> {

@@ -5,7 +5,7 @@ mod columns;
 
 use self::buffers::{Buffers, ROWS, StarsUnderOneSky, WriteColumn, fill, set};
 use super::parallel::Workers;
-use crate::astrometry::{Observer, Sky, Targets, Track, body_direction, star_direction};
+use crate::astrometry::{Observer, Sky, Targets, Track, TrackPlan, body_direction, star_direction};
 use crate::ephemeris::Body;
 use crate::error::{Error, Result, Status};
 use crate::horizon::Latitude;
@@ -52,7 +52,8 @@ pub fn place(
     let leap_seconds = observer.orientation.leap_seconds();
     let instants: Vec<std::result::Result<Instant<Tai>, Status>> =
         when.iter().map(|&utc| leap_seconds.to_tai(utc)).collect();
-    let track = Track::through(instants.iter().filter_map(|instant| instant.ok()), observer.ephemeris);
+    let plan = TrackPlan::through(instants.iter().filter_map(|instant| instant.ok()));
+    let track = workers.track(plan, observer.ephemeris)?;
     let job = Job { observer, targets, instants: &instants, shape, track: &track, isa: workers.isa() };
     workers.for_each(out.blocks(ROWS), |(first, block)| job.block(first, block))
 }
