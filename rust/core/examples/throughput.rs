@@ -8,7 +8,8 @@ use hourarc_core::earth::Orientation;
 use hourarc_core::ephemeris::Ephemeris;
 use hourarc_core::events::{Days, night_bounds, track_for};
 use hourarc_core::grid::{
-    KEEP_GOING, PlaceColumn, PlaceColumns, Shape, Workers, event_table, place, window_table,
+    GridQuantity, GridValues, KEEP_GOING, PlaceColumn, PlaceColumns, Shape, Workers, event_table, place,
+    visibility_grid, window_table,
 };
 use hourarc_core::refraction::{AirmassModel, Atmosphere, Refraction};
 use hourarc_core::site::Site;
@@ -107,6 +108,26 @@ fn main() {
             assert!(table.expect("events").time.len() > rows / 2);
         });
         report("rise, transit, set", seconds);
+        let nights = 365;
+        let mut hours = vec![0.0f32; rows * nights];
+        for (name, limits) in [("a year of hours", &limits), ("a year of hours with the Moon", &with_moon)] {
+            let seconds = best(|| {
+                let columns = vec![(GridQuantity::Hours, GridValues::Single(&mut hours))];
+                let mut workers = Workers::new(threads, &mut go);
+                visibility_grid(
+                    &observer,
+                    &targets,
+                    61_109,
+                    nights,
+                    limits,
+                    columns,
+                    &mut workers,
+                    &mut |_| (),
+                )
+                .expect("a grid");
+            });
+            report(name, seconds / nights as f64);
+        }
         for (name, limits) in [("windows", &limits), ("windows with the Moon", &with_moon)] {
             let seconds = best(|| {
                 let table = window_table(&mut days, &targets, limits, &mut Workers::new(threads, &mut go));

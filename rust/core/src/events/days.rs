@@ -1,7 +1,7 @@
 //! A span of UTC as the days of TT that it touches.
 
 use super::arc::{Arc, BODY_NODES, BodyArc, StarArc};
-use crate::astrometry::{Observer, Sky, Targets, Track};
+use crate::astrometry::{Observer, Sky, Targets, Track, TrackPlan};
 use crate::ephemeris::Body;
 use crate::error::{Error, Result, Status};
 use crate::time::{Instant, Tai, Utc};
@@ -62,10 +62,18 @@ pub fn whole_days(start: Instant<Tai>, stop: Instant<Tai>) -> (i64, i64) {
 /// # Errors
 /// As [`span_ends`].
 pub fn track_for(observer: &Observer<'_>, start: Utc, stop: Utc) -> Result<Track> {
+    Ok(track_plan(observer, start, stop)?.compute(observer.ephemeris))
+}
+
+/// The plan of that track, for a caller who has threads.
+///
+/// # Errors
+/// As [`span_ends`].
+pub fn track_plan(observer: &Observer<'_>, start: Utc, stop: Utc) -> Result<TrackPlan> {
     let (start, stop) = span_ends(observer, start, stop)?;
     let (first, last) = whole_days(start, stop);
     let at = |day: i64| Instant::<crate::time::Tt>::from_mjd(day as f64, 0.0).to_tai();
-    Ok(Track::over(at(first), at(last + 1), observer.ephemeris))
+    Ok(TrackPlan::over(at(first), at(last + 1)))
 }
 
 impl<'a> Days<'a> {

@@ -13,6 +13,6 @@ pub use arc::{
     directions_at, node_fraction,
 };
 pub use crossing::{Crossing, Culmination, DayPath};
-pub use days::{Days, span_ends, track_for, utc_text};
+pub use days::{Days, span_ends, track_for, track_plan, utc_text};
 pub use passages::{Event, EventKind, Passage, rise_transit_set};
 pub use scatter::horizon_scatter;

@@ -54,9 +54,22 @@ impl<'a> Workers<'a> {
     /// # Errors
     /// When the caller said to stop; some items are then not done.
     pub fn for_each<T: Send>(&mut self, items: Vec<T>, work: impl Fn(T) + Sync) -> Result<()> {
+        self.for_each_with(items, || (), |(), item| work(item))
+    }
+
+    /// The same with space that each thread makes once and keeps from item to item.
+    ///
+    /// # Errors
+    /// When the caller said to stop; some items are then not done.
+    pub fn for_each_with<T: Send, S>(
+        &mut self,
+        items: Vec<T>,
+        space: impl Fn() -> S + Sync,
+        work: impl Fn(&mut S, T) + Sync,
+    ) -> Result<()> {
         let threads = self.threads.min(items.len());
         if threads <= 1 {
-            return self.alone(items, work);
+            return self.alone(items, space, work);
         }
         let queue = Mutex::new(items.into_iter());
         let stop = AtomicBool::new(false);
@@ -66,10 +79,11 @@ impl<'a> Workers<'a> {
             for _ in 0..threads {
                 scope.spawn(|| {
                     let _signal = Signal { busy: &busy, lock: &lock, done: &done };
+                    let mut space = space();
                     while !stop.load(Ordering::Relaxed) {
                         let next = queue.lock().unwrap_or_else(PoisonError::into_inner).next();
                         match next {
-                            Some(item) => work(item),
+                            Some(item) => work(&mut space, item),
                             None => break,
                         }
                     }
@@ -84,6 +98,22 @@ impl<'a> Workers<'a> {
             }
         });
         if stop.into_inner() { Err(Error::interrupted()) } else { Ok(()) }
+    }
+
+    /// What `work` makes of every item, in the order of the items.
+    ///
+    /// # Errors
+    /// The first of the items' errors, or the caller's wish to stop.
+    pub fn map<T: Send, R: Send>(
+        &mut self,
+        items: Vec<T>,
+        work: impl Fn(T) -> Result<R> + Sync,
+    ) -> Result<Vec<R>> {
+        let mut slots: Vec<Option<Result<R>>> = Vec::new();
+        slots.resize_with(items.len(), || None);
+        let tasks = items.into_iter().zip(slots.iter_mut()).collect();
+        self.for_each(tasks, |(item, slot): (T, &mut Option<Result<R>>)| *slot = Some(work(item)))?;
+        slots.into_iter().map(|slot| slot.unwrap_or_else(|| Err(Error::interrupted()))).collect()
     }
 
     /// A track, its nodes shared out.
@@ -102,10 +132,11 @@ impl<'a> Workers<'a> {
         Ok(plan.finish(&nodes.ok_or_else(Error::interrupted)?))
     }
 
-    fn alone<T>(&mut self, items: Vec<T>, work: impl Fn(T)) -> Result<()> {
+    fn alone<T, S>(&mut self, items: Vec<T>, space: impl Fn() -> S, work: impl Fn(&mut S, T)) -> Result<()> {
+        let mut space = space();
         let mut asked = std::time::Instant::now();
         for item in items {
-            work(item);
+            work(&mut space, item);
             if asked.elapsed() >= ASK_EVERY {
                 if !(self.keep_going)() {
                     return Err(Error::interrupted());

@@ -171,7 +171,8 @@ impl IntervalSet {
 
     /// Sum of the lengths.
     pub fn duration(&self) -> f64 {
-        self.iter().map(|interval| interval.stop - interval.start).sum()
+        // Not `sum`, whose zero is −0.
+        self.iter().fold(0.0, |sum, interval| sum + (interval.stop - interval.start))
     }
 
     /// Keeps the intervals for which the answer is yes.

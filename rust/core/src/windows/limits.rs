@@ -2,7 +2,7 @@
 
 use super::reason::Cause;
 use crate::error::{Error, Result, Status};
-use crate::refraction::AirmassModel;
+use crate::refraction::{AirmassModel, Refraction};
 
 /// A limit: one value for all targets, or a value a target.
 #[derive(Debug, Clone, PartialEq)]
@@ -20,6 +20,14 @@ impl Column {
         match self {
             Column::All(value) => *value,
             Column::Each(values) => values[row],
+        }
+    }
+
+    /// The column of a function of the values.
+    pub fn map(&self, function: impl Fn(f64) -> f64) -> Column {
+        match self {
+            Column::All(value) => Column::All(function(*value)),
+            Column::Each(values) => Column::Each(values.iter().copied().map(function).collect()),
         }
     }
 
@@ -129,6 +137,33 @@ impl Limits {
             _ => false,
         };
         if self.columns().iter().any(wrong) { Status::Limit } else { Status::Ok }
+    }
+
+    /// Whether a limit differs from target to target.
+    pub fn is_per_target(&self) -> bool {
+        self.columns().iter().any(|(_, column, ..)| matches!(column, Some(Column::Each(_))))
+    }
+
+    /// The lowest observed altitude that altitude and airmass allow, radians; `None` without either.
+    ///
+    /// # Errors
+    /// An airmass for all targets that no altitude has.
+    pub fn lowest_altitude(&self, refraction: &Refraction) -> Result<Option<Column>> {
+        let altitude_of = |airmass: f64| self.airmass_model.observed_altitude(airmass, refraction);
+        let by_airmass = match &self.airmass_max {
+            None => return Ok(self.altitude_min.clone()),
+            Some(Column::All(airmass)) => Column::All(altitude_of(*airmass)?),
+            // A bad value is the row's own affair: Limits::status marks it.
+            Some(each) => each.map(|airmass| altitude_of(airmass).unwrap_or(f64::NAN)),
+        };
+        Ok(Some(match (&self.altitude_min, by_airmass) {
+            (None, by_airmass) => by_airmass,
+            (Some(Column::All(a)), Column::All(b)) => Column::All(a.max(b)),
+            (Some(Column::All(a)), Column::Each(b)) => Column::Each(b).map(|b| a.max(b)),
+            (Some(Column::Each(a)), b) => {
+                Column::Each(a.iter().enumerate().map(|(row, a)| a.max(b.at(row))).collect())
+            }
+        }))
     }
 
     /// The limits on the sky itself, in the order in which they are applied.
