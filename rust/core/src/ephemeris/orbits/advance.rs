@@ -7,9 +7,15 @@
 //! out: other asteroids, the figures of Sun and planets, radiation, outgassing.
 //!
 //! # Error
-//! - Of the integration ([`gauss_radau`](super::gauss_radau)): `there_and_back`.
-//! - Of the model, against JPL's integration of Ceres, Pallas, Vesta and Camilla with all of these and more:
-//!   `asteroids_after_a_thousand_days`.
+//! - Of the integration ([`gauss_radau`](super::gauss_radau)): 3e-13 au after 1000 days there and as many back
+//!   (`there_and_back`), 1e-14 to 4e-14 of the distance after ten years against the closed two-body solution. A close
+//!   passage by a planet magnifies it as it magnifies any error of the start.
+//! - Of the model, seen from the Earth: 0.004″ after 1000 days at most, against JPL's integration of Ceres, Pallas, Vesta
+//!   and Camilla, which has the other asteroids as well (`asteroids_after_a_thousand_days`). Two-body motion of the
+//!   same is off by 0.0007″ after 1 day, 0.08″ after 10 and 14″ after 100 (`two_bodies_after_days_and_months`).
+//!
+//! # Cost
+//! 0.3 ms of a core for a main-belt orbit and a year (`pace`).
 
 use std::ops::Range;
 
@@ -200,7 +206,7 @@ mod tests {
     #[test]
     fn two_bodies_after_days_and_months() {
         let kernel = Spk::new(ASTEROIDS, "asteroid excerpt").unwrap();
-        for (days, bound) in [(1.0, 0.01), (10.0, 1.0), (100.0, 100.0)] {
+        for (days, bound) in [(1.0, 0.001), (10.0, 0.1), (100.0, 20.0)] {
             let mut worst = 0.0f64;
             for (code, name) in NAMES {
                 for first in [59_760.0, 60_100.0, 60_500.0, 60_900.0, 61_300.0] {
@@ -208,7 +214,7 @@ mod tests {
                     let there = orbit.at(at(first + days)).state();
                     let expected = published(&kernel, code, first + days);
                     let error = norm(sub(there.position, expected.position));
-                    let stated = drift::drift_au(&orbit, drift::perturbation(&orbit), days);
+                    let stated = stated(&orbit, days);
                     assert!(error < stated, "{name} {first}: {error:e} au, stated {stated:e}");
                     worst = worst.max(apart(there.position, expected.position, first + days));
                 }
@@ -225,6 +231,11 @@ mod tests {
         let i: f64 = random.between(0.0, if near { 0.5 } else { 0.35 });
         let angles = [i, random.between(0.0, TURN), random.between(0.0, TURN)];
         table::from_mean_anomaly(60_600.0, e, angles, a, random.between(0.0, TURN)).unwrap()
+    }
+
+    fn stated(orbit: &Elements, days: f64) -> f64 {
+        let perturbation = drift::perturbation(orbit, &drift::Planets::at(orbit.epoch));
+        drift::drift_au(perturbation, orbit.period_d(), days)
     }
 
     #[test]
@@ -253,7 +264,7 @@ mod tests {
         let ephemeris = Ephemeris::default();
         let mut random = Random::new(99);
         for near in [false, true] {
-            for days in [10.0, 100.0, 400.0, 2000.0, 7000.0] {
+            for days in [10.0, 60.0, 100.0, 200.0, 400.0, 2000.0, 7000.0] {
                 let mut covered = 0;
                 let mut ratios = Vec::new();
                 const CASES: usize = 60;
@@ -262,14 +273,15 @@ mod tests {
                     let to = orbit.epoch.plus_days(days);
                     let truth = orbit.advance(to, &ephemeris).unwrap().state().position;
                     let error = norm(sub(orbit.at(to).state().position, truth));
-                    let stated = drift::drift_au(&orbit, drift::perturbation(&orbit), days);
+                    let stated = stated(&orbit, days);
                     covered += usize::from(error <= stated);
                     ratios.push(stated / error);
                 }
                 ratios.sort_by(f64::total_cmp);
                 println!(
-                    "near {near}, {days} d: covered {covered} of {CASES}, stated over true {:.2} to {:.1}, median {:.1}",
+                    "near {near}, {days} d: covered {covered} of {CASES}, stated over true {:.2}, {:.2} (5 %) to {:.1}, median {:.1}",
                     ratios[0],
+                    ratios[CASES / 20],
                     ratios[CASES - 1],
                     ratios[CASES / 2]
                 );

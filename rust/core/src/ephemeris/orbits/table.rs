@@ -82,7 +82,9 @@ pub struct Orbits {
     rate: Vec<f64>,
     along: [Vec<f64>; 3],
     across: [Vec<f64>; 3],
-    perturbation: Vec<f64>,
+    perturbation: Vec<drift::Perturbation>,
+    /// Where the planets were at the last row's epoch: most catalogues have one for all.
+    planets: Option<drift::Planets>,
 }
 
 /// Largest eccentricity taken: hyperbolas so flat that the Sun hardly bends them have no use for an orbit.
@@ -241,10 +243,10 @@ impl Orbits {
             &mut self.frequency,
             &mut self.eccentricity,
             &mut self.rate,
-            &mut self.perturbation,
         ] {
             column.reserve(more);
         }
+        self.perturbation.reserve(more);
         self.along.iter_mut().chain(&mut self.across).for_each(|column| column.reserve(more));
     }
 
@@ -269,7 +271,12 @@ impl Orbits {
         self.frequency.push(if bound { 1.0 / period } else { 0.0 });
         self.eccentricity.push(e);
         self.rate.push((GM_SUN / q).sqrt() / q);
-        self.perturbation.push(drift::perturbation(&elements));
+        let planets = match self.planets {
+            Some(planets) if planets.epoch() == elements.epoch => planets,
+            _ => drift::Planets::at(elements.epoch),
+        };
+        self.planets = Some(planets);
+        self.perturbation.push(drift::perturbation(&elements, &planets));
         for (axis, (p, a)) in scale(q, along).into_iter().zip(scale(q * (1.0 + e).sqrt(), across)).enumerate()
         {
             self.along[axis].push(p);
@@ -305,7 +312,7 @@ impl Orbits {
     /// How far two-body motion may have drifted from the true one at an instant, au: see [`drift`](super::drift).
     pub fn drift_au(&self, row: usize, tdb: Instant<Tdb>) -> f64 {
         let elements = &self.elements[row];
-        drift::drift_au(elements, self.perturbation[row], tdb.days_since(elements.epoch))
+        drift::drift_au(self.perturbation[row], elements.period_d(), tdb.days_since(elements.epoch))
     }
 
     /// [`Status::FarFromEpoch`] where the drift seen from `distance_au` may exceed [`drift::LIMIT`]; a bad row's status
