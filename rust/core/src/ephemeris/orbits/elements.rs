@@ -225,6 +225,37 @@ mod tests {
         println!("worst: position {worst_position:e}, velocity {worst_velocity:e}");
     }
 
+    /// Every row of two_body.csv: fifty digits and the classical anomalies, by tests/reference/make_two_body.py.
+    #[test]
+    fn two_bodies_as_fifty_digits_have_them() {
+        let text = include_str!("../../../../../tests/reference/two_body.csv");
+        let (mut rows, mut worst) = (0, 0.0f64);
+        for line in text.lines().skip(2) {
+            let n: Vec<f64> = line.split(',').map(|field| field.parse().unwrap()).collect();
+            let first = Elements {
+                epoch: epoch(),
+                perihelion_au: n[0],
+                eccentricity: n[1],
+                inclination: n[2],
+                node: n[3],
+                perihelion_argument: n[4],
+                since_perihelion_d: n[5],
+            };
+            let state = first.at(epoch().plus_days(n[6])).state();
+            let position = norm(sub(state.position, [n[7], n[8], n[9]])) / norm(state.position);
+            let velocity = norm(sub(state.velocity, [n[10], n[11], n[12]])) / norm(state.velocity);
+            // Rounding of the time (an instant keeps 1e-16 d, its sum with the days 1e-16 of them) moves along the orbit.
+            let moved = 1e-15 * n[6].abs() * norm(state.velocity) / norm(state.position);
+            let turned = 1e-15 * n[6].abs() * GM_SUN / norm(state.position).powi(2) / norm(state.velocity);
+            assert!(position < 1e-14 + 2.0 * moved, "{line}: {position:e}");
+            assert!(velocity < 1e-14 + 2.0 * turned, "{line}: {velocity:e}");
+            worst = worst.max(position).max(velocity);
+            rows += 1;
+        }
+        println!("{rows} rows, worst {worst:e}");
+        assert_eq!(rows, 200);
+    }
+
     #[test]
     fn energy_and_momentum_stay() {
         let first = Elements {
