@@ -8,7 +8,7 @@ use std::sync::OnceLock;
 
 use super::Body;
 use crate::constants::ASTRONOMICAL_UNIT_M;
-use crate::math::vector::{Vector, angle, cross, dot, norm, scale, sub};
+use crate::math::vector::{Vector, angle, cross, dot, from_angles, norm, scale, sub};
 
 /// The triangle of Sun, body and observer.
 #[derive(Debug, Clone, Copy, PartialEq)]
@@ -285,6 +285,17 @@ pub fn magnitude(body: Body, geometry: &Geometry, year: f64, ring_latitude: Opti
     }
 }
 
+/// Saturn's effective ring latitude for [`magnitude`], radians: the geometric mean of the latitudes of observer and Sun
+/// above the plane of the rings, 0 where they are on opposite sides (Mallama & Hilton 2018, after Mallama 2012 [M]).
+///
+/// Vectors from the Sun and from the observer to Saturn, any length, ICRS axes. Saturn's pole: Archinal et al. 2018,
+/// *Celest. Mech. Dyn. Astron.* 130:22, table 1 [M], at J2000.0; its precession is 0.004° in thirty years.
+pub fn saturn_ring_latitude(from_sun: Vector, from_observer: Vector) -> f64 {
+    let pole = from_angles(40.589f64.to_radians(), 83.537f64.to_radians());
+    let latitude = |v: Vector| (-dot(v, pole) / norm(v)).clamp(-1.0, 1.0).asin();
+    (latitude(from_sun) * latitude(from_observer)).max(0.0).sqrt()
+}
+
 fn horner(x: f64, coefficients: &[f64]) -> f64 {
     coefficients.iter().rev().fold(0.0, |sum, coefficient| sum * x + coefficient)
 }
@@ -292,7 +303,8 @@ fn horner(x: f64, coefficients: &[f64]) -> f64 {
 #[cfg(test)]
 mod tests {
     use super::*;
-    use crate::math::vector::from_angles;
+    use crate::ephemeris::Compact;
+    use crate::time::Instant;
 
     fn geometry(r: f64, delta: f64, phase_deg: f64) -> Geometry {
         Geometry {
@@ -343,6 +355,25 @@ mod tests {
             let gap = v(body, 1.0, 1.0, edge - 1e-9) - v(body, 1.0, 1.0, edge + 1e-9);
             assert!(gap.abs() < step, "{body:?} {gap}");
         }
+    }
+
+    /// The rings stood open by 26.7° to 27° in October 2017 and went edge-on to the Earth on 2025 March 23, to the Sun on 2025
+    /// May 6; in between the two were on opposite sides. [M]
+    #[test]
+    fn rings_open_and_close() {
+        let latitude = |mjd: f64| {
+            let at = |body| Compact::builtin().position(body, Instant::from_mjd(mjd, 0.0)).unwrap();
+            let saturn = at(Body::Saturn);
+            saturn_ring_latitude(sub(saturn, at(Body::Sun)), sub(saturn, at(Body::Earth))).to_degrees()
+        };
+        let (october_2017, march_23) = (58_040.0, 60_757.0);
+        assert!((26.6..27.0).contains(&latitude(october_2017)), "{}", latitude(october_2017));
+        assert!(
+            latitude(march_23 - 2.0) > 0.0
+                && latitude(march_23 + 2.0) == 0.0
+                && latitude(march_23 + 40.0) == 0.0
+        );
+        assert!(latitude(march_23 + 60.0) > 0.0);
     }
 
     /// By hand from the formula: with G = 0.15 a phase of 20° dims by 1.00 mag, one of 0° by nothing.

@@ -99,7 +99,8 @@ impl Forces for SolarSystem<'_> {
 /// A heliocentric state (au, au/day, ICRS axes) at one instant carried to another.
 ///
 /// [`Status::OutsideEphemeris`] where the ephemeris ends on the way; [`Status::NoDirection`] for a body that falls into
-/// the Sun, the Moon or a planet; [`Status::FarFromEpoch`] when 200,000 steps do not suffice.
+/// the Sun, the Moon or a planet, or circles one so closely that 200,000 steps do not suffice; [`Status::NotATime`] for a
+/// NaN.
 pub fn advance_state(
     state: State,
     from: Instant<Tdb>,
@@ -137,7 +138,7 @@ impl Elements {
 
 impl Orbits {
     /// The elements of rows at another epoch, or why a row has none there; a bad row keeps its status. The caller gives
-    /// every thread its range, and puts the parts together with [`Orbits::push`].
+    /// every thread its range, and puts the parts together with [`Orbits::with_elements`].
     pub fn advance(
         &self,
         rows: Range<usize>,
@@ -306,6 +307,11 @@ mod tests {
         let advanced = orbits.advance(0..2, at(60_700.0), &ephemeris);
         assert_eq!(advanced[0], Err(Status::Elements));
         assert_eq!(advanced[1], orbit.advance(at(60_700.0), &ephemeris));
+        let again = orbits.with_elements(&advanced).unwrap();
+        assert_eq!((again.len(), again.status(0), again.status(1)), (2, Status::Elements, Status::Ok));
+        assert_eq!((*again.elements(1), again.brightness(1)), (advanced[1].unwrap(), brightness));
+        assert!(orbits.with_elements(&advanced[..1]).unwrap_err().is_invalid());
+        assert_eq!(orbit.advance(at(f64::NAN), &ephemeris), Err(Status::NotATime));
         // Nowhere to go.
         let same = orbit.advance(orbit.epoch, &ephemeris).unwrap().state();
         assert!(norm(sub(same.position, orbit.state().position)) < 1e-14);

@@ -63,6 +63,11 @@ impl Elements {
         if self.eccentricity < 1.0 { TURN / self.mean_motion() } else { f64::INFINITY }
     }
 
+    /// The perihelion nearest to the epoch, MJD TT.
+    pub fn perihelion_mjd_tt(&self) -> f64 {
+        self.epoch.plus_days(-self.since_perihelion_d).to_tt().mjd()
+    }
+
     /// The same conic with its epoch at another instant: two-body motion, nothing else.
     pub fn at(&self, epoch: Instant<Tdb>) -> Elements {
         let since = self.since_perihelion_d + epoch.days_since(self.epoch);

@@ -100,6 +100,9 @@ pub trait Forces {
 }
 
 /// Carries a position and a velocity over `days` (of either sign). `first_step` is a guess.
+///
+/// Besides what the forces report: [`Status::NotATime`] where `days` is not finite, and [`Status::NoDirection`] where 200,000
+/// steps do not suffice or the acceleration is not finite.
 pub fn integrate<F: Forces>(
     forces: &F,
     mut position: Vector,
@@ -107,6 +110,9 @@ pub fn integrate<F: Forces>(
     days: f64,
     first_step: f64,
 ) -> Result<(Vector, Vector), Status> {
+    if !days.is_finite() {
+        return Err(Status::NotATime);
+    }
     let t = tables();
     let sign = if days < 0.0 { -1.0 } else { 1.0 };
     let mut now = 0.0;
@@ -198,7 +204,7 @@ pub fn integrate<F: Forces>(
         (b, foreseen) = if factor > 2.0 { ([[0.0; 3]; N], [[0.0; 3]; N]) } else { (corrected, forecast) };
         step = next;
     }
-    Err(Status::FarFromEpoch)
+    Err(Status::NoDirection)
 }
 
 /// Position and velocity at a share `h` of a step.
