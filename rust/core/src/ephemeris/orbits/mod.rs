@@ -11,6 +11,7 @@
 //! - [`advance`] carries orbits to another epoch under the pull of the Sun, the Moon and the planets.
 //! - [`drift`] says how far two-body motion may be off.
 pub mod advance;
+mod batch;
 pub mod designation;
 pub mod drift;
 pub mod elements;
