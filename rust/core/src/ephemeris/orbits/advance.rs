@@ -159,7 +159,7 @@ mod tests {
     use crate::constants::{RADIANS_PER_ARCSECOND, TURN};
     use crate::ephemeris::Spk;
     use crate::ephemeris::orbits::random::Random;
-    use crate::ephemeris::orbits::{drift, table};
+    use crate::ephemeris::orbits::{drift, mpc, table};
     use crate::ephemeris::photometry::Brightness;
     use crate::math::vector::angle;
 
@@ -201,6 +201,20 @@ mod tests {
                 assert!(error < 0.1, "{name} {first} {days}: {error}");
             }
         }
+    }
+
+    /// The Minor Planet Center's line of Ceres for 2023-09-13 (as remembered [M]) against JPL's state at that epoch: format,
+    /// angles, frame and GM together. The two institutions' orbits differ by 0.1″ in the mean anomaly.
+    #[test]
+    fn ceres_by_its_published_line() {
+        let line = "00001    3.34  0.15 K239D  60.07881   73.42179   80.25496   10.58688  0.0789126  0.21411523   2.7672544";
+        let lines = mpc::minor_planets(line);
+        let kernel = Spk::new(ASTEROIDS, "asteroid excerpt").unwrap();
+        let state = lines.orbits().heliocentric(0, at(60_200.0));
+        let expected = published(&kernel, 2000001, 60_200.0);
+        let error = norm(sub(state.position, expected.position));
+        println!("Ceres by its line: {error:e} au");
+        assert!(error < 3e-6 && norm(sub(state.velocity, expected.velocity)) < 2e-8, "{error:e}");
     }
 
     /// Two-body motion against the same, and the drift that is stated for it.

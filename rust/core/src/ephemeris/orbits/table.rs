@@ -404,6 +404,24 @@ mod tests {
         assert_eq!(message, "node: given 2 rows, allowed 3, as epochs");
     }
 
+    #[test]
+    fn far_from_its_epoch_a_row_says_so() {
+        let mut orbits = Orbits::new();
+        let brightness = Brightness::Hg { h: 15.0, g: 0.15 };
+        orbits.push(from_mean_anomaly(60_600.0, 0.1, [0.1, 0.2, 0.3], 2.7, 1.0), brightness);
+        orbits.push(from_mean_anomaly(60_600.0, -0.1, [0.1, 0.2, 0.3], 2.7, 1.0), brightness);
+        let at = |days: f64| orbits.elements(0).epoch.plus_days(days);
+        for sign in [1.0, -1.0] {
+            assert_eq!(orbits.status_at(0, at(sign * 10.0), 2.0), Status::Ok);
+            assert_eq!(orbits.status_at(0, at(sign * 2000.0), 2.0), Status::FarFromEpoch);
+        }
+        assert_eq!(orbits.drift_au(0, at(0.0)), 0.0);
+        assert!(orbits.drift_au(0, at(500.0)) > orbits.drift_au(0, at(100.0)));
+        for days in [0.0, 2000.0] {
+            assert_eq!(orbits.status_at(1, at(days), 2.0), Status::Elements);
+        }
+    }
+
     /// Mean anomaly and perihelion time are two ways to say one thing.
     #[test]
     fn both_anomalies_give_one_orbit() {
