@@ -1,7 +1,7 @@
 //! How bright and how large bodies look, and how they are lit: pure functions of the geometry.
 //!
 //! Distances in au, angles in radians, magnitudes in V. Formulae whose constants were written down from memory of the
-//! paper rather than with the paper at hand say "[M]"; the tests then check them against published worked values.
+//! paper rather than with the paper at hand say "[from memory]"; the tests then check them against published worked values.
 
 use std::f64::consts::PI;
 use std::sync::OnceLock;
@@ -116,7 +116,7 @@ impl Brightness {
 
 /// The phase function of the H,G system, 1 at opposition.
 ///
-/// Bowell et al. 1989, in *Asteroids II*, p. 524, in the form that the Minor Planet Center computes with [M]. Meant for
+/// Bowell et al. 1989, in *Asteroids II*, p. 524, in the form that the Minor Planet Center computes with [from memory]. Meant for
 /// phases up to 120°; it falls to 0 at 180°.
 pub fn phase_function_hg(g: f64, phase: f64) -> f64 {
     let tangent = (0.5 * phase).tan();
@@ -127,7 +127,7 @@ pub fn phase_function_hg(g: f64, phase: f64) -> f64 {
 /// The phase function of the H,G₁,G₂ system, 1 at opposition; NaN beyond 150°, where it is not defined.
 ///
 /// Muinonen et al. 2010, *Icarus* 209, 542, tables 3 to 5: straight lines to 7.5° and cubic splines with given end slopes
-/// beyond, and a spline of nine knots to 30° for the opposition effect [M].
+/// beyond, and a spline of nine knots to 30° for the opposition effect [from memory].
 pub fn phase_function_hg1g2(g1: f64, g2: f64, phase: f64) -> f64 {
     let [dark, bright, peak] = basis();
     let phase = phase.abs();
@@ -236,7 +236,7 @@ fn basis() -> &'static [Spline; 3] {
 
 /// Apparent V magnitude of the Sun, the Moon or a planet.
 ///
-/// - Planets: Mallama & Hilton 2018, *Astronomy and Computing* 25, 10 [M], errors by their account 0.01 to 0.1 mag inside
+/// - Planets: Mallama & Hilton 2018, *Astronomy and Computing* 25, 10 [from memory], errors by their account 0.01 to 0.1 mag inside
 ///   the phases seen from the Earth. Left out are Mars's rotation and seasons (±0.06) and Uranus's latitude (at most
 ///   0.07).
 /// - Saturn without its rings unless `ring_latitude` is given: the planetocentric latitude of the Earth above the ring
@@ -244,9 +244,9 @@ fn basis() -> &'static [Spline; 3] {
 /// - Neptune brightened from 1980 to 2000: `year` (any, 2000 or later for now).
 /// - Sun: −26.76 at 1 au (Willmer 2018, *Astrophys. J. Suppl.* 236, 47).
 /// - Moon: −12.73 + 0.026|α°| + 4e-9 α°⁴ at its mean distance and 1 au from the Sun (Krisciunas & Schaefer 1991, *Publ.
-///   Astron. Soc. Pacific* 103, 1033, after Allen 1976) [M], which leaves out the surge within 7° of full and errs by
+///   Astron. Soc. Pacific* 103, 1033, after Allen 1976) [from memory], which leaves out the surge within 7° of full and errs by
 ///   tenths in a thin crescent.
-/// - Pluto: −1.01 + 0.041 α° (Seidelmann 1992, *Explanatory Supplement*, table 7.3) [M].
+/// - Pluto: −1.01 + 0.041 α° (Seidelmann 1992, *Explanatory Supplement*, table 7.3) [from memory].
 pub fn magnitude(body: Body, geometry: &Geometry, year: f64, ring_latitude: Option<f64>) -> f64 {
     let (r, delta) = (geometry.heliocentric_au, geometry.distance_au);
     let a = geometry.phase_angle.to_degrees();
@@ -286,10 +286,10 @@ pub fn magnitude(body: Body, geometry: &Geometry, year: f64, ring_latitude: Opti
 }
 
 /// Saturn's effective ring latitude for [`magnitude`], radians: the geometric mean of the latitudes of observer and Sun
-/// above the plane of the rings, 0 where they are on opposite sides (Mallama & Hilton 2018, after Mallama 2012 [M]).
+/// above the plane of the rings, 0 where they are on opposite sides (Mallama & Hilton 2018, after Mallama 2012 [from memory]).
 ///
 /// Vectors from the Sun and from the observer to Saturn, any length, ICRS axes. Saturn's pole: Archinal et al. 2018,
-/// *Celest. Mech. Dyn. Astron.* 130:22, table 1 [M], at J2000.0; its precession is 0.004° in thirty years.
+/// *Celest. Mech. Dyn. Astron.* 130:22, table 1 [from memory], at J2000.0; its precession is 0.004° in thirty years.
 pub fn saturn_ring_latitude(from_sun: Vector, from_observer: Vector) -> f64 {
     let pole = from_angles(40.589f64.to_radians(), 83.537f64.to_radians());
     let latitude = |v: Vector| (-dot(v, pole) / norm(v)).clamp(-1.0, 1.0).asin();
