@@ -318,7 +318,7 @@ impl Orbits {
         self.brightness[row]
     }
 
-    /// How far two-body motion may have drifted from the true one at an instant, au: see [`drift`](super::drift).
+    /// How far two-body motion may have drifted from the true one at an instant, au: see [`drift`].
     pub fn drift_au(&self, row: usize, tdb: Instant<Tdb>) -> f64 {
         let elements = &self.elements[row];
         drift::drift_au(self.perturbation[row], elements.period_d(), tdb.days_since(elements.epoch))
