@@ -172,7 +172,8 @@ impl Passages {
         };
         let dark = self.sun[3].down(from, to);
         let moonless = self.moon.down(from, to);
-        let hours = |intervals: &[(f64, f64)]| intervals.iter().map(|i| (i.1 - i.0) * 24.0).sum();
+        // Not `sum`, which is −0.0 of nothing.
+        let hours = |intervals: &[(f64, f64)]| intervals.iter().fold(0.0, |sum, i| sum + (i.1 - i.0) * 24.0);
         let both: Vec<_> = dark
             .iter()
             .flat_map(|a| moonless.iter().map(|b| (a.0.max(b.0), a.1.min(b.1))))
