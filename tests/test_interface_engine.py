@@ -158,7 +158,7 @@ def test_ctrl_c_is_heard_within_a_fifth_of_a_second(verb, threads):
             os.kill(os.getpid(), signal.SIGINT)
         when = np.datetime64("2026-03-10") + np.arange(40)
         calls = dict(
-            place=lambda: ha.place(site, stars, when, columns="altitude_deg", threads={threads}),
+            place=lambda: ha.place(site, stars, when, columns=ha.PLACE_COLUMNS, threads={threads}),
             windows=lambda: ha.windows(site, stars, "2026-03-10", "2026-04-10", threads={threads}),
             rise_transit_set=lambda: ha.rise_transit_set(
                 site, stars, "2026-03-10", "2026-04-10", threads={threads}
