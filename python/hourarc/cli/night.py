@@ -7,25 +7,27 @@ from pathlib import Path
 
 import click
 
-from . import _options
+from . import _lists, _options
 
 
 @click.command(short_help="Plan one night: the windows of each target, or what blocks it.")
-@click.argument("plan", type=_options.FILE, metavar="PLAN.toml")
-@click.argument("targets", type=_options.FILE, metavar="TARGETS")
+@_options.plan
+@_options.targets
 @click.option(
     "--night", type=_options.NIGHT, required=True, help="Date of the night's evening, such as 2026-03-10."
 )
-@click.option(
-    "-o",
-    "--output",
-    type=click.Path(dir_okay=False, allow_dash=True, path_type=Path),
-    help="The windows: a .parquet, .csv or .ecsv file, or - for CSV to standard output.",
-)
+@_options.bodies
+@_options.result("The windows")
 @_options.threads
 @_options.quiet
 def command(
-    plan: Path, targets: Path, night: datetime.date, output: Path | None, threads: int | None, quiet: bool
+    plan: Path,
+    targets: Path | None,
+    night: datetime.date,
+    bodies: tuple[str, ...] | None,
+    output: Path | None,
+    threads: int | None,
+    quiet: bool,
 ) -> int:
     """Plan one night for every target of TARGETS under the limits of PLAN.toml.
 
@@ -37,4 +39,5 @@ def command(
     """
     from ._plan_night import plan_night
 
-    return plan_night(plan, targets, night, output=output, threads=threads, quiet=quiet)
+    _lists.given_list(targets, bodies)
+    return plan_night(plan, targets, night, bodies=bodies, output=output, threads=threads, quiet=quiet)

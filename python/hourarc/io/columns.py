@@ -7,11 +7,12 @@ how to be certain.
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Iterable, Mapping
 from dataclasses import dataclass
 from typing import Any
 
-from .fields import FIELDS, NAME_ALIASES, canonical_unit, squash, unit_for
+from .fields import FIELDS, NAME_ALIASES, TIME_ALIASES, canonical_unit, squash, unit_for
+from .instants import TIME_UNITS
 from .problems import WrongInput, nearest
 
 
@@ -66,24 +67,40 @@ def column_spec(key: str, value: Any, where: str) -> ColumnSpec:
         raise WrongInput(f"{where}: the value of {key} is given {constant!r}; a number is needed")
     if unit is not None and key in FIELDS:
         unit_for(FIELDS[key], unit, where)
+    if key == "time":
+        if "value" in value:
+            raise WrongInput(f"{where}: time needs a column; one instant for all rows is `hourarc sky --at`")
+        if unit is not None and unit not in TIME_UNITS:
+            raise WrongInput(f'{where}: time cannot be in "{unit}"; known: {", ".join(TIME_UNITS)}')
     return ColumnSpec(column, unit, constant)
 
 
 def find_columns(
-    names: list[str], units: Mapping[str, str], specs: Mapping[str, ColumnSpec], source: str
+    names: list[str],
+    units: Mapping[str, str],
+    specs: Mapping[str, ColumnSpec],
+    source: str,
+    *,
+    with_time: bool = False,
 ) -> dict[str, Found]:
-    """Every field that has a column or a value; a table without `ra` or `dec` is refused."""
-    _refuse_doubled(names, specs, source)
+    """Every field that has a column or a value; a table without `ra` or `dec` is refused.
+
+    `with_time`: each row has its instant; a table without `time` is refused too.
+    """
+    _refuse_doubled(names, specs, source, TIME_ALIASES if with_time else ())
     found: dict[str, Found] = {}
     for key in ("name", *FIELDS):
         if key in specs:
             found[key] = _by_plan(key, specs[key], names, units, source)
         elif (usual := _by_usual_name(key, names, units, source)) is not None:
             found[key] = usual
-    missing = [key for key in ("ra", "dec") if key not in found]
+    if with_time and (time := _find_time(names, specs, source)) is not None:
+        found["time"] = time
+    needed = ("ra", "dec", "time") if with_time else ("ra", "dec")
+    missing = [key for key in needed if key not in found]
     if missing:
         raise WrongInput(
-            f"{source}: no column for {' and '.join(missing)}; the table has {_listed(names)}. "
+            f"{source}: no column for {_and(missing)}; the table has {_listed(names)}. "
             f'Name it in the plan, for example: [columns] {missing[0]} = "{_guess(missing[0], names)}"'
         )
     _refuse_mixed(found, "ra", "dec", ("rad",), source)
@@ -112,6 +129,20 @@ def _by_plan(key: str, spec: ColumnSpec, names: list[str], units: Mapping[str, s
     return Found(name, unit, True, True)
 
 
+def _find_time(names: list[str], specs: Mapping[str, ColumnSpec], source: str) -> Found | None:
+    """The column of instants: that of the plan, or the one with a usual name."""
+    if "time" in specs:
+        column = specs["time"].column
+        assert column is not None  # `column_spec` refuses a value
+        name = locate(column, names, "[columns] time", source)
+        unit = specs["time"].unit
+        return Found(name, unit or TIME_ALIASES.get(squash(name), ""), unit is not None, True)
+    hits = [n for n in names if squash(n) in TIME_ALIASES]
+    if len(hits) > 1:
+        raise _several("time", hits, source)
+    return Found(hits[0], TIME_ALIASES[squash(hits[0])], False, False) if hits else None
+
+
 def locate(column: str | int, names: list[str], who: str, source: str) -> str:
     """The table's name of a column given by name or by number from 1."""
     if isinstance(column, int):
@@ -138,10 +169,7 @@ def _by_usual_name(key: str, names: list[str], units: Mapping[str, str], source:
     if not hits:
         return None
     if len(hits) > 1:
-        raise WrongInput(
-            f"{source}: the columns {_listed(hits)} could all be {key}; "
-            f'say which in the plan, for example: [columns] {key} = "{hits[0]}"'
-        )
+        raise _several(key, hits, source)
     unit, stated = _unit_from_file(key, hits[0], units.get(hits[0]), source)
     return Found(hits[0], unit, stated, False)
 
@@ -161,10 +189,19 @@ def _unit_from_file(key: str, name: str, in_file: str | None, source: str) -> tu
     return by_name or field.unit, bool(by_name)
 
 
-def _refuse_doubled(names: list[str], specs: Mapping[str, ColumnSpec], source: str) -> None:
+def _several(key: str, hits: list[str], source: str) -> WrongInput:
+    return WrongInput(
+        f"{source}: the columns {_listed(hits)} could all be {key}; "
+        f'say which in the plan, for example: [columns] {key} = "{hits[0]}"'
+    )
+
+
+def _refuse_doubled(
+    names: list[str], specs: Mapping[str, ColumnSpec], source: str, more: Iterable[str]
+) -> None:
     """A name that stands twice in the header is refused if anybody could mean it."""
     wanted = {s.column for s in specs.values() if isinstance(s.column, str)}
-    usual = {alias for f in FIELDS.values() for alias in f.aliases} | set(NAME_ALIASES)
+    usual = {alias for f in FIELDS.values() for alias in f.aliases} | set(NAME_ALIASES) | set(more)
     seen: dict[str, int] = {}
     for position, name in enumerate(names, start=1):
         if name in seen and (name in wanted or squash(name) in usual):
@@ -203,7 +240,13 @@ def _listed(names: list[str]) -> str:
     return shown + (f" and {len(names) - 20} more" if len(names) > 20 else "")
 
 
+def _and(words: list[str]) -> str:
+    return words[0] if len(words) == 1 else f"{', '.join(words[:-1])} and {words[-1]}"
+
+
 def _guess(key: str, names: list[str]) -> str:
     """The column that most looks like the field, for the example in a message."""
-    likely = {"ra": ("ra", "right", "alpha"), "dec": ("de", "delta")}[key]
+    likely = {"ra": ("ra", "right", "alpha"), "dec": ("de", "delta"), "time": ("t", "date", "mjd", "obs")}[
+        key
+    ]
     return next((n for n in names if squash(n).startswith(likely)), "...")

@@ -207,8 +207,23 @@ NAME_ALIASES = (
     "hip",
 )
 
+#: Columns that may hold the instant of an exposure (UTC), and the unit that the name itself states.
+TIME_ALIASES = {
+    "time": "",
+    "utc": "",
+    "timeutc": "",
+    "utctime": "",
+    "datetime": "",
+    "dateobs": "",
+    "mjd": "mjd",
+    "mjdutc": "mjd",
+    "mjdobs": "mjd",
+    "jd": "jd",
+    "jdutc": "jd",
+}
+
 #: The keys of the plan's `[columns]`.
-COLUMN_KEYS = ("name", *FIELDS)
+COLUMN_KEYS = ("name", "time", *FIELDS)
 
 
 def squash(name: str) -> str:

@@ -23,9 +23,13 @@ def provenance(
     command: str = "",
     limits: Any = None,
     targets: Targets | None = None,
+    done: str = "planned",
     **about: Any,
 ) -> dict[str, Any]:
-    """The record, by topic; texts, or nested values that go to a file as JSON."""
+    """The record, by topic; texts, or nested values that go to a file as JSON.
+
+    `done`: the word for what became of the rows that were not rejected.
+    """
     import hourarc
 
     record: dict[str, Any] = {"software": f"hourarc {hourarc.__version__}"}
@@ -34,11 +38,12 @@ def provenance(
     record.update(about)
     record["plan"] = {"file": plan.path.name, "sha256": plan.sha256}
     if targets is not None:
-        record["targets"] = {
-            "file": targets.path.name,
-            "sha256": targets.sha256,
+        origin: dict[str, Any] = {"bodies": list(targets.bodies)}
+        if targets.path is not None:
+            origin = {"file": targets.path.name, "sha256": targets.sha256}
+        record["targets"] = origin | {
             "rows_read": targets.rows_read,
-            "planned": len(targets),
+            done: len(targets),
             "rejected": len(targets.rejected),
         }
     record["site"] = site_record(site)

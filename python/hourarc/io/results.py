@@ -31,6 +31,15 @@ DECIMALS = {
     "moon_illuminated_fraction": 6,
     "dark_hours": 6,
     "dark_hours_moonless": 6,
+    # A microarcsecond is 3e-10 degrees.
+    "altitude_deg": 10,
+    "azimuth_deg": 10,
+    "hour_angle_deg": 10,
+    "declination_deg": 10,
+    "parallactic_angle_deg": 10,
+    "moon_separation_deg": 10,
+    "sun_separation_deg": 10,
+    "airmass": 6,
 }
 
 
@@ -69,6 +78,22 @@ def blocked_table(windows: Any, targets: Targets, first: int = 0) -> pa.Table:
             "blocked_by": table["blocked_by"],
             "status": table["status"],
         }
+    )
+
+
+def places_table(places: Any, targets: Targets) -> pa.Table:
+    """A row a target with its place, every column of `place`. Rows without a place go to `targets.rejected`.
+
+    `places` has one place a target: of one instant, or pairwise.
+    """
+    import pyarrow as pa
+
+    bad = places.status >= FIRST_BAD_STATUS
+    table = places.to_arrow().filter(pa.array(~bad))
+    targets.reject(bad, places.status_words)
+    names = ("time", *places.columns, "status")
+    return _table(
+        {"row": pa.array(targets.row), "name": targets.name} | {name: table[name] for name in names}
     )
 
 

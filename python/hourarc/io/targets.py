@@ -6,7 +6,7 @@ No row is lost: the number of rows read is the number planned plus the number re
 from __future__ import annotations
 
 import hashlib
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, field
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
@@ -17,11 +17,19 @@ from ..limits import LIMITS
 from .cells import begins_sexagesimal, looks_sexagesimal, numbers, sexagesimal
 from .columns import ColumnSpec, Found, find_columns, locate
 from .fields import FIELDS, Field, epoch_offset, scale
+from .instants import FORM, instants
 from .problems import BrokenFile, Rejected, WrongInput
 from .tables import open_table
 
 if TYPE_CHECKING:
     import pyarrow as pa
+
+
+#: Statuses whose word alone would leave a reader asking.
+_SAID = {
+    "before_utc": "before 1960, when UTC begins",
+    "outside_ephemeris": "outside 1900 to 2100, which the ephemeris covers",
+}
 
 
 @dataclass(frozen=True)
@@ -39,7 +47,8 @@ class TargetLayout:
 class Targets:
     """Targets that can be planned, and the rows that cannot."""
 
-    path: Path
+    #: The file, or None for bodies by name.
+    path: Path | None
     sha256: str
     rows_read: int
     #: Row in the source, from 1, for each planned target.
@@ -53,14 +62,25 @@ class Targets:
     #: What a reader should know (notes) and what is probably wrong (warnings).
     notes: list[str] = field(default_factory=list)
     warnings: list[str] = field(default_factory=list)
+    #: The instant of each row, UTC, datetime64[ns], if the table was read with them.
+    time: np.ndarray | None = None
+    #: The names of bodies, where they are the targets: row i is the i-th of them, and there are no columns.
+    bodies: tuple[str, ...] = ()
+
+    @property
+    def source(self) -> str:
+        """Where the targets come from, for messages."""
+        return str(self.path) if self.path is not None else "--bodies"
 
     def __len__(self) -> int:
         return len(self.row)
 
-    def catalog(self, start: int = 0, stop: int | None = None) -> Any:
-        """The planned targets, or a slice of them, as a `hourarc.Catalog`."""
+    def part(self, start: int = 0, stop: int | None = None) -> Any:
+        """The planned targets, or a slice of them, as a `hourarc.Catalog` or as `hourarc.Bodies`."""
         import hourarc
 
+        if self.bodies:
+            return hourarc.Bodies([self.bodies[row - 1] for row in self.row[start:stop]])
         part = {key: values[start:stop] for key, values in self.columns.items()}
         return hourarc.Catalog(
             part["ra"],
@@ -77,20 +97,23 @@ class Targets:
         import pyarrow as pa
 
         for i in np.flatnonzero(bad):
-            self.rejected.add(self.row[i], self.name[int(i)].as_py(), "", "", str(reason[i]))
+            value = "" if self.time is None else str(self.time[i])
+            said = _SAID.get(str(reason[i]), str(reason[i]))
+            self.rejected.add(self.row[i], self.name[int(i)].as_py(), "", value, said)
         self.rejected.sort()
         keep = ~bad
         self.row = self.row[keep]
         self.name = self.name.filter(pa.array(keep))
         self.columns = {key: values[keep] for key, values in self.columns.items()}
         self.limits = {key: values[keep] for key, values in self.limits.items()}
+        self.time = None if self.time is None else self.time[keep]
         self.check_counts()
 
     def check_counts(self) -> None:
         """Rows read = planned + rejected, each row once."""
         if self.rows_read != len(self.row) + len(self.rejected):
             raise AssertionError(
-                f"{self.path}: {self.rows_read} rows read, "
+                f"{self.source}: {self.rows_read} rows read, "
                 f"but {len(self.row)} planned and {len(self.rejected)} rejected"
             )
 
@@ -101,8 +124,9 @@ def read_targets(
     *,
     layout: TargetLayout | None = None,
     limit_columns: Mapping[str, str | int] | None = None,
+    with_time: bool = False,
 ) -> Targets:
-    """Reads a target table.
+    """Reads a target table; `with_time`: one whose rows each have an instant too.
 
     `columns` is the plan's `[columns]`; without an entry the usual names are looked for. `limit_columns`
     names, for some limits, the column that holds each target's own value.
@@ -115,7 +139,7 @@ def read_targets(
 
     path, layout = Path(path), layout or TargetLayout()
     table = open_table(path, layout.layout, header=layout.header, table=layout.table)
-    found = find_columns(table.names, table.units, columns or {}, str(path))
+    found = find_columns(table.names, table.units, columns or {}, str(path), with_time=with_time)
     of_limits = {
         key: locate(column, table.names, f"[limits] {key}", str(path))
         for key, column in (limit_columns or {}).items()
@@ -135,6 +159,7 @@ def read_targets(
         key: _limit(key, column, content.columns[column], faults, layout.missing, path)
         for key, column in of_limits.items()
     }
+    time = _time(found["time"], content.columns, faults, layout.missing, path) if with_time else None
     warnings = [w for w in (_hours_suspected(found["ra"], result["ra"], faults.good),) if w]
     if "epoch" not in found and any(key in found for key in ("pmra", "pmdec")):
         notes.append(
@@ -159,6 +184,7 @@ def read_targets(
         rejected=rejected,
         notes=notes,
         warnings=warnings,
+        time=None if time is None else time[good],
     )
     targets.check_counts()
     if targets.rows_read == 0:
@@ -168,6 +194,17 @@ def read_targets(
             f"{path}: none of the {targets.rows_read} rows can be planned; the first: {rejected.line(0)}"
         )
     return targets
+
+
+def named_bodies(names: Sequence[str]) -> Targets:
+    """Bodies of the solar system as targets; names that are not known raise `hourarc.errors.UnknownName`."""
+    import pyarrow as pa
+
+    import hourarc
+
+    bodies = tuple(map(str, hourarc.Bodies(names).name))
+    row = np.arange(1, len(bodies) + 1)
+    return Targets(None, "", len(bodies), row, pa.array(bodies), {}, {}, Rejected(), bodies=bodies)
 
 
 class _Faults:
@@ -240,6 +277,17 @@ def _field(
         faults.add(~np.isfinite(values), found.column, raw, "not a finite number")
         faults.add((values < spec.low) | (values > spec.high), found.column, raw, f"outside {_range(spec)}")
     return values
+
+
+def _time(
+    found: Found, columns: Mapping[str, pa.Array], faults: _Faults, missing: tuple[str, ...], path: Path
+) -> np.ndarray:
+    assert found.column is not None  # an instant for all rows is refused by the plan
+    raw = columns[found.column]
+    times, null, wrong = instants(raw, found.unit, found.column, missing, path)
+    faults.add(null, found.column, raw, "empty")
+    faults.add(wrong, found.column, raw, f"not {FORM}" if found.unit in ("", "iso") else "not a day count")
+    return times
 
 
 def _limit(

@@ -67,3 +67,11 @@ def aligned(
 def count(number: int, noun: str) -> str:
     """ "1 row", "6,000 rows"."""
     return f"{number:,} {noun}" if number == 1 else f"{number:,} {noun}s"
+
+
+def rows_line(targets: Any, done: str = "planned") -> str:
+    """What became of the rows: none is lost."""
+    return (
+        f"{count(targets.rows_read, 'row')} read = {len(targets):,} {done} "
+        f"+ {len(targets.rejected):,} rejected"
+    )

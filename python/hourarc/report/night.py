@@ -7,7 +7,7 @@ from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
-from ._text import NEVER, aligned, called, count, date_and_clock, hours
+from ._text import NEVER, aligned, called, count, date_and_clock, hours, rows_line
 
 if TYPE_CHECKING:
     import pyarrow as pa
@@ -27,8 +27,7 @@ def night_report(
         "",
         *_sky(almanac),
         "",
-        f"{count(targets.rows_read, 'row')} read = {len(targets):,} planned "
-        f"+ {len(targets.rejected):,} rejected",
+        rows_line(targets),
         *_with_windows(windows),
         *_without_windows(blocked),
         *_best_placed(windows),
@@ -59,7 +58,9 @@ def _sky(almanac: Any) -> list[str]:
         ["Sun, morning", at["dawn_astronomical"], at["dawn_nautical"], at["dawn_civil"], at["sunrise"]],
     ]
     age, lit = float(almanac.moon_age_d[0]), 100.0 * float(almanac.moon_illuminated_fraction[0])
-    moon = f"  Moon          rises {at['moonrise']}, sets {at['moonset']}"
+    rises = "does not rise" if at["moonrise"] == NEVER else f"rises {at['moonrise']}"
+    sets = "does not set" if at["moonset"] == NEVER else f"sets {at['moonset']}"
+    moon = f"  Moon          {rises}, {sets}"
     moon += f"; {age:.1f} days old, {lit:.0f} % lit at midnight" if np.isfinite(age) else ""
     dark = f"  Dark          {hours(float(almanac.dark_hours[0]))} with the Sun below -18°, "
     dark += f"{hours(float(almanac.dark_hours_moonless[0]))} of them without the Moon"

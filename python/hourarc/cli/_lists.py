@@ -1,0 +1,121 @@
+"""What the commands that take a list of targets share: reading it, writing the result, telling of rejects."""
+
+from __future__ import annotations
+
+import sys
+from collections.abc import Sequence
+from pathlib import Path
+from typing import TYPE_CHECKING, Any
+
+import click
+
+from ._run import DONE, DONE_WITH_REJECTED
+
+if TYPE_CHECKING:
+    from ..io.plan import Plan
+    from ..io.targets import Targets
+
+#: Rejected rows that are shown on the terminal; the file has all of them.
+SHOWN = 5
+
+
+def given_list(targets: Path | None, bodies: Sequence[str] | None) -> None:
+    """Refuses a call with neither a table nor bodies, or with both."""
+    if targets is None and bodies is None:
+        raise click.UsageError("Missing argument 'TARGETS' (or name bodies of the solar system: --bodies).")
+    if targets is not None and bodies is not None:
+        raise click.UsageError(f"both TARGETS ({targets}) and --bodies are given; one of them is needed")
+
+
+def to_stdout(output: Path | None) -> bool:
+    """Whether the result goes to standard output."""
+    return output is not None and str(output) == "-"
+
+
+def check_output(output: Path | None, *inputs: Path | None) -> None:
+    """Refuses a result that cannot be written or would replace an input, before the work."""
+    from ..io.writers import check_result
+
+    if output is not None and not to_stdout(output):
+        check_result(output, [path for path in inputs if path is not None])
+
+
+def read_list(
+    plan: Plan,
+    targets: Path | None,
+    bodies: Sequence[str] | None = None,
+    *,
+    quiet: bool,
+    with_limits: bool = False,
+    with_time: bool = False,
+) -> Targets:
+    """The targets, with what is to be said about them on standard error."""
+    from ..io.problems import WrongInput
+    from ..io.targets import named_bodies, read_targets
+
+    of_limits = plan.limit_columns if with_limits else {}
+    if targets is None:
+        if of_limits:
+            key = next(iter(of_limits))
+            raise WrongInput(
+                f"{plan.where('limits', key)}: {key} is taken from a column, and --bodies has no columns; "
+                "give one value"
+            )
+        return named_bodies(bodies or ())
+    read = read_targets(
+        targets, plan.columns, layout=plan.layout, limit_columns=of_limits, with_time=with_time
+    )
+    for warning in read.warnings:
+        print(f"hourarc: warning: {targets}: {warning}", file=sys.stderr)
+    if not quiet:
+        for note in read.notes:
+            print(f"hourarc: note: {targets}: {note}", file=sys.stderr)
+    return read
+
+
+def write_list(
+    output: Path | None, main: Any, companions: dict[str, Any], targets: Targets, record: dict[str, Any]
+) -> list[Path]:
+    """The result, its companions by the word in their name, and the rejected rows: all files or none."""
+    from ..io.whole import WholeFiles
+    from ..io.writers import beside, write_rejected, write_table, write_text
+
+    if output is None:
+        return []
+    if to_stdout(output):
+        write_text(main, sys.stdout.buffer, record, "csv")
+        sys.stdout.buffer.flush()
+        return []
+    rejected_path = beside(output, "rejected", ".csv")
+    with WholeFiles() as files:
+        write_table(main, output, record, files)
+        for word, table in companions.items():
+            write_table(table, beside(output, word), record, files)
+        # An older list beside a newer result would be about other rows: it is written anew, even if empty.
+        if len(targets.rejected) or rejected_path.exists():
+            write_rejected(targets.rejected, rejected_path, record, files)
+        return files.commit()
+
+
+def tell(report: str, output: Path | None, written: list[Path]) -> None:
+    """The report, away from the result if that goes to standard output."""
+    print(report, file=sys.stderr if to_stdout(output) else sys.stdout)
+    if written:
+        print("\nWritten: " + ", ".join(str(path) for path in written))
+
+
+def tell_rejected(targets: Targets, written: list[Path]) -> int:
+    """The first rejected rows, on standard error. Returns the exit code."""
+    rejected = targets.rejected
+    if not len(rejected):
+        return DONE
+    were = "was" if len(rejected) == 1 else "were"
+    lines = [f"hourarc: {len(rejected):,} of {targets.rows_read:,} rows of {targets.source} {were} rejected:"]
+    lines += [f"  {rejected.line(i)}" for i in range(min(SHOWN, len(rejected)))]
+    listed = next((path for path in written if path.name.endswith(".rejected.csv")), None)
+    if len(rejected) > SHOWN:
+        lines.append(f"  and {len(rejected) - SHOWN:,} more" + ("" if listed else "; -o FILE lists them all"))
+    if listed:
+        lines.append(f"  all of them: {listed}")
+    print("\n".join(lines), file=sys.stderr)
+    return DONE_WITH_REJECTED
