@@ -248,6 +248,70 @@ def test_a_full_disk_is_told_and_leaves_the_older_result(
     assert output.read_text() == "older"
 
 
+@pytest.mark.skipif(not sys.platform.startswith("linux"), reason="needs the limits and devices of Linux")
+def test_a_disk_that_fills_while_writing(plan: Path, tmp_path: Path) -> None:
+    import resource
+
+    targets = tmp_path / "many.csv"
+    targets.write_text("ra,dec\n" + "".join(f"{i * 0.01},{-60 + i % 50}\n" for i in range(20_000)))
+
+    def small() -> None:
+        resource.setrlimit(resource.RLIMIT_FSIZE, (20_000, 20_000))
+
+    before = sorted(path.name for path in tmp_path.iterdir())
+    for suffix in ("parquet", "csv", "ecsv"):
+        output = tmp_path / f"w.{suffix}"
+        arguments = ("night", plan, targets, "--night", "2026-03-10", "-q", "-o", output)
+        done = process(*arguments, preexec_fn=small)
+        assert done.returncode == 1
+        assert done.stderr == f"hourarc: error: {output}: File too large\n"
+        assert sorted(path.name for path in tmp_path.iterdir()) == before, "nothing is left behind"
+    with open("/dev/full", "w") as full:
+        command = [sys.executable, "-m", "hourarc", *map(str, arguments[:-1]), "-"]
+        done = subprocess.run(command, stdout=full, stderr=subprocess.PIPE, text=True, check=False)
+    assert done.returncode == 1
+    assert done.stderr == "hourarc: error: standard output: No space left on device\n"
+
+
+@pytest.mark.skipif(sys.platform == "win32", reason="closes a stream as a POSIX shell does")
+def test_closed_streams(plan: Path, targets: Path) -> None:
+    program = f'"{sys.executable}" -m hourarc night "{plan}" "{targets}" --night 2026-03-10'
+    for closed in (">&-", "2>&-", ">&- 2>&-"):
+        output = plan.parent / "w.csv"
+        done = subprocess.run(
+            f'{program} -o "{output}" {closed}', shell=True, capture_output=True, text=True, check=False
+        )
+        assert done.returncode == 0 and output.exists() and "Traceback" not in done.stderr
+        output.unlink()
+    # The report must not slip into the result when its own stream is closed.
+    done = subprocess.run(f"{program} -o - 2>&-", shell=True, capture_output=True, text=True, check=True)
+    assert "rows read" not in done.stdout and "row,name,start" in done.stdout
+
+
+def test_a_folder_that_may_not_be_written(
+    plan: Path, targets: Path, capsys: pytest.CaptureFixture[str], monkeypatch: pytest.MonkeyPatch
+) -> None:
+    def denied(path: object, *_: object) -> int:
+        raise PermissionError(13, "Permission denied", str(path))
+
+    # Not by the folder's own permissions: whoever runs this may be root.
+    monkeypatch.setattr("hourarc.io.whole.os.open", denied)
+    output = plan.parent / "w.csv"
+    assert night(plan, targets, "-q", "-o", output) == 1
+    assert capsys.readouterr().err == f"hourarc: error: {output}: Permission denied\n"
+
+
+def test_folders_where_files_are_needed(
+    plan: Path, targets: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    folder = plan.parent / "folder.csv"
+    folder.mkdir()
+    assert night(folder, targets) == 2 and f"File '{folder}' is a directory" in capsys.readouterr().err
+    assert night(plan, folder) == 2 and f"File '{folder}' is a directory" in capsys.readouterr().err
+    assert night(plan, targets, "-o", folder) == 2
+    assert f"File '{folder}' is a directory" in capsys.readouterr().err
+
+
 # ---- almanac -----------------------------------------------------------------------------------------------
 
 

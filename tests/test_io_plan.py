@@ -129,7 +129,7 @@ def test_wrong_values_in_the_site(tmp_path: Path, text: str, said: str) -> None:
     [
         (
             "altitude_min_deg = 95",
-            "line 7, [limits]: Limits: altitude_min_deg: given 95, allowed -5 to 90 deg",
+            "line 7, [limits]: altitude_min_deg: given 95, allowed -5 to 90 deg",
         ),
         ("airmass_max = 0.5", "airmass_max: given 0.5, allowed 1 to 40"),
         ("airmass_max = '2'", "airmass_max: given '2'"),
@@ -178,3 +178,22 @@ def test_files_that_are_no_plans(tmp_path: Path) -> None:
 def test_lowering_the_sun_limit_is_cautioned(tmp_path: Path) -> None:
     with pytest.warns(hourarc.errors.SunLimitWarning, match="never the interlock"):
         plan(tmp_path, SITE + "[limits]\nsun_separation_min_deg = 10\n").limits()
+
+
+def test_messages_speak_the_language_of_the_plan(tmp_path: Path) -> None:
+    def limits(line: str) -> str:
+        return refused(tmp_path, f"{SITE}[limits]\n{line}\n")
+
+    assert limits("altitude_min_deg = 100").endswith(
+        'line 7, [limits]: altitude_min_deg: given 100, allowed -5 to 90 deg, or "off"'
+    )
+    assert limits("window_min_s = [1, 2]").endswith(
+        'line 7, [limits]: window_min_s is given [1, 2]; one value, or { column = "..." } '
+        "to take each target's own from the table"
+    )
+    message = limits('sun_altitude_max_deg = "astro"')
+    assert "line 7, [limits]: sun_altitude_max_deg: given 'astro', which is unknown" in message
+    assert "the nearest is 'astronomical'; allowed -90 to 90 deg, or \"off\"" in message
+    assert "line 1: longitude_deg stands in no section; the sections are site, limits" in refused(
+        tmp_path, "longitude_deg = 24.5\n" + SITE
+    )

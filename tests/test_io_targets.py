@@ -11,6 +11,7 @@ import pyarrow as pa
 import pyarrow.csv
 import pyarrow.parquet as pq
 import pytest
+from hourarc.errors import HourarcError
 from hourarc.io.columns import ColumnSpec
 from hourarc.io.fields import FIELDS, canonical_unit
 from hourarc.io.problems import BrokenFile, WrongInput
@@ -439,3 +440,62 @@ def test_the_engine_agrees_with_the_ranges() -> None:
             values = np.array([edge, np.nextafter(edge, outward)])
             row = {"ra_deg": 10.0, "dec_deg": 10.0} | {words[key]: values}
             assert hourarc.Catalog(**row).bad.tolist() == [False, True], (key, edge)
+
+
+# ---- files that are not what they seem ---------------------------------------------------------------------
+
+
+def test_text_in_another_encoding_spoils_its_own_rows_only(tmp_path: Path) -> None:
+    path = tmp_path / "targets.csv"
+    path.write_bytes(b"name,ra,dec\n\xe9toile,200,5\nb,\xff201,3\nc,1,2,3\nd,202,4\n")
+    read = read_targets(path)
+    assert read.name.to_pylist() == ["\N{REPLACEMENT CHARACTER}toile", "d"]
+    assert [read.rejected.line(i) for i in range(2)] == [
+        "row 2, column \"ra\" = '\N{REPLACEMENT CHARACTER}201': not a number",
+        "row 3 = 'c,1,2,3': 4 values where there are 3 columns",
+    ]
+    assert any("not UTF-8" in warning for warning in read.warnings)
+
+
+@pytest.mark.parametrize(
+    ("content", "said"),
+    [
+        ("name,ra,dec\na,200,5\n".encode("utf-16"), "the text is in UTF-16; UTF-8 is needed"),
+        (b"x" * 20_000_000, "the first line has 20,000,000 characters; no header is that long"),
+        (b"name,ra,dec\n" + b"x" * 40_000_000 + b",200,5\n", "a line is longer than 16 MB"),
+        (b"name;ra;dec\na;200;5\n", "has its columns between semicolons; commas or tabs are needed"),
+        (b"name\tra\tdec\na\t200\t5\n", 'has its columns between tabs; say layout = "tsv"'),
+    ],
+)
+def test_text_that_is_no_table(tmp_path: Path, content: bytes, said: str) -> None:
+    path = tmp_path / "targets.csv"
+    path.write_bytes(content)
+    with pytest.raises(HourarcError) as caught:
+        read_targets(path)
+    assert said in str(caught.value) and str(path) in str(caught.value)
+
+
+@pytest.mark.parametrize(
+    "content",
+    [
+        b"name,ra,dec\r\na,200,5\r\nb,201,3\r\n",
+        b"name,ra,dec\ra,200,5\rb,201,3\r",
+        b"\xef\xbb\xbfname,ra,dec\na,200,5\nb,201,3",
+        b" name , ra ,dec\n a , 200 , 5 \nb,201,3\n",
+        b'# \xe9\n\nname,ra,dec\n"a",200,5\n\nb,"201",3\n',
+    ],
+)
+def test_ends_of_lines_marks_and_blanks_do_not_matter(tmp_path: Path, content: bytes) -> None:
+    path = tmp_path / "targets.csv"
+    path.write_bytes(content)
+    read = read_targets(path)
+    assert read.name.to_pylist() == ["a", "b"] and not len(read.rejected)
+    assert read.columns["ra"].tolist() == [200.0, 201.0] and read.columns["dec"].tolist() == [5.0, 3.0]
+
+
+def test_names_that_are_shared_are_noted(tmp_path: Path) -> None:
+    path = tmp_path / "targets.csv"
+    path.write_text("name,ra,dec\na,200,5\nb,201,3\na,202,3\n")
+    read = read_targets(path)
+    assert len(read) == 3
+    assert "1 row has the name of an earlier one; their numbers tell them apart" in read.notes

@@ -18,7 +18,7 @@ from numpy.typing import ArrayLike
 
 from . import _engine
 from ._columns import Floats, column
-from .errors import InvalidArgument, SunLimitWarning, UnknownName, WrongType
+from .errors import InvalidArgument, SunLimitWarning, UnknownName, WrongType, nearest
 
 __all__ = ["LIMITS", "SUN_CAUTION", "Limit", "Limits"]
 
@@ -269,8 +269,12 @@ def _value(limit: Limit, given: Any) -> float | str | Floats | None:
             return limit.words[given]
         if given in limit.choices:
             return given
-        if limit.words or limit.choices:
-            raise UnknownName.among(what, given, [*limit.words, *limit.choices])
+        if limit.choices:
+            raise UnknownName.among(what, given, limit.choices)
+        if limit.words:
+            guess = nearest(given, limit.words)
+            hint = f"; the nearest is {guess!r}" if guess is not None else ""
+            raise UnknownName(f"{what}: given {given!r}, which is unknown{hint}; allowed {limit.allowed()}")
         raise WrongType.of(what, given, limit.allowed())
     if limit.choices:
         raise WrongType.of(what, given, limit.allowed())

@@ -83,8 +83,13 @@ def write_list(
     if output is None:
         return []
     if to_stdout(output):
-        write_text(main, sys.stdout.buffer, record, "csv")
-        sys.stdout.buffer.flush()
+        try:
+            write_text(main, sys.stdout.buffer, record, "csv")
+            sys.stdout.buffer.flush()
+        except BrokenPipeError:
+            raise
+        except OSError as error:
+            raise OSError(error.errno, error.strerror, "standard output") from error
         return []
     rejected_path = beside(output, "rejected", ".csv")
     with WholeFiles() as files:

@@ -66,6 +66,9 @@ def commands() -> None:
 
 def run(arguments: Sequence[str]) -> int:
     """Runs one command and returns its exit code."""
+    # A stream that the caller has closed is None, and what is printed to None goes to the other one.
+    sys.stdout = sys.stdout or open(os.devnull, "w")  # noqa: SIM115
+    sys.stderr = sys.stderr or open(os.devnull, "w")  # noqa: SIM115
     said: set[str] = set()
 
     def show(message: Warning | str, category: type[Warning], *_: object, **__: object) -> None:

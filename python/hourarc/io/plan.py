@@ -89,7 +89,8 @@ class _Blame:
     def __exit__(self, kind: type[BaseException] | None, error: BaseException | None, _: object) -> None:
         if kind is None or not isinstance(error, (ValueError, TypeError)) or isinstance(error, WrongInput):
             return
-        message = str(error)
+        # As the plan has it: the section is named anyway, and TOML has no None.
+        message = re.sub(r"^(Site|Limits): ", "", str(error)).replace("or None (off)", 'or "off"')
         keys = self._plan.site_keywords if self._section == "site" else self._plan.limit_keywords
         # The complaint names the keyword, or the quantity in plain words ("height of the site").
         words = {key: re.sub(r"_(deg|m|hpa|c|um|h|s)$", "", key).replace("_", " ") for key in keys}
@@ -114,6 +115,10 @@ def read_plan(path: str | Path) -> Plan:
     plan = Plan(path, hashlib.sha256(raw).hexdigest(), {}, {}, _text=text)
     for section, content in data.items():
         line = _at(find_line(text, section, None) or find_line(text, None, section))
+        if section not in _SECTIONS and not isinstance(content, dict):
+            raise WrongInput(
+                f"{path}{line}: {section} stands in no section; the sections are {', '.join(_SECTIONS)}"
+            )
         if section not in _SECTIONS:
             raise WrongInput(f'{path}{line}: unknown section "{section}"; {nearest(section, _SECTIONS)}')
         if not isinstance(content, dict):
@@ -145,6 +150,11 @@ def read_plan(path: str | Path) -> Plan:
                     'or { column = "..." } to take each target\'s own from the table'
                 )
             plan.limit_columns[key] = value["column"]
+        elif isinstance(value, list):
+            raise WrongInput(
+                f"{plan.where('limits', key)}: {key} is given {value!r}; one value, "
+                'or { column = "..." } to take each target\'s own from the table'
+            )
         else:
             # TOML has no word for nothing: "off" switches a limit off that is on by default.
             plan.limit_keywords[key] = None if value == "off" else value

@@ -10,7 +10,7 @@ from __future__ import annotations
 
 import csv
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from pathlib import Path
 from typing import TYPE_CHECKING, Any, Protocol
 
@@ -37,6 +37,9 @@ LAYOUTS = {
     ".txt": "spaces",
 }
 
+#: Longer lines, in bytes, are taken for something else than a table.
+_LONGEST_LINE = 1 << 24
+
 
 @dataclass
 class Content:
@@ -47,6 +50,8 @@ class Content:
     row: np.ndarray
     #: Rows that do not have the header's number of values: (number in the source, text, fault).
     ragged: list[tuple[int, str, str]]
+    #: What is to be said of the file, beside its rows.
+    warnings: list[str] = field(default_factory=list)
 
 
 class Table(Protocol):
@@ -121,6 +126,10 @@ class _Text:
         self.units: dict[str, str] = {}
         self._delimiter = {"csv": ",", "tsv": "\t", "spaces": " "}[layout]
         data = _bytes(path)
+        if data[:2] in (b"\xff\xfe", b"\xfe\xff"):
+            raise BrokenFile(f"{path}: the text is in UTF-16; UTF-8 is needed")
+        if b"\n" not in data:
+            data = data.replace(b"\r", b"\n")  # lines that end as on the first Macintoshes
         if layout == "spaces":
             data = _single_spaces(data)
         start = _after_comments(data)
@@ -128,7 +137,18 @@ class _Text:
         first = data[start : end if end >= 0 else len(data)].decode("utf-8-sig", "replace").rstrip("\r")
         if not first.strip():
             raise BrokenFile(f"{path}: the file holds no header and no rows")
+        if len(first) > _LONGEST_LINE:
+            raise BrokenFile(f"{path}: the first line has {len(first):,} characters; no header is that long")
         words = next(csv.reader([first], delimiter=self._delimiter))
+        other = next((sign for sign in ";\t|" if sign in first and sign != self._delimiter), None)
+        if len(words) == 1 and other is not None:
+            named = {"\t": "tabs", ";": "semicolons", "|": "bars"}[other]
+            tip = (
+                'say layout = "tsv" in the plan\'s [targets]'
+                if other == "\t"
+                else "commas or tabs are needed"
+            )
+            raise WrongInput(f"{path}: the header {_short(first)!r} has its columns between {named}; {tip}")
         if header is None:
             # Space-separated catalogues mostly have no header: one whose first line is all numbers has none.
             header = layout != "spaces" or not all(_is_number(word) for word in words)
@@ -144,7 +164,8 @@ class _Text:
         ragged: list[tuple[int, str, str]] = []
 
         def skip(row: pa.csv.InvalidRow) -> str:
-            fault = f"{row.actual_columns} values where there are {row.expected_columns} columns"
+            values = "1 value" if row.actual_columns == 1 else f"{row.actual_columns} values"
+            fault = f"{values} where there are {row.expected_columns} columns"
             # Arrow numbers the rows it was given from 1; none of them is the header.
             ragged.append((row.number, row.text, fault))
             return "skip"
@@ -154,28 +175,41 @@ class _Text:
             return Content({name: pa.array([], pa.string()) for name in wanted}, np.arange(0), [])
         unique = [str(i) for i in range(len(self.names))]
         indices = {name: unique[self.names.index(name)] for name in wanted}
+        warnings: list[str] = []
         try:
-            table = pa.csv.read_csv(
-                pa.BufferReader(pa.py_buffer(body)),
-                # One thread, so that a skipped row knows its number.
-                read_options=pa.csv.ReadOptions(column_names=unique, use_threads=False, block_size=1 << 24),
-                parse_options=pa.csv.ParseOptions(
-                    delimiter=self._delimiter, invalid_row_handler=skip, newlines_in_values=b'"' in self._data
-                ),
-                # Everything as text: a column's type must not hang on what its first rows look like.
-                convert_options=pa.csv.ConvertOptions(
-                    include_columns=list(indices.values()),
-                    column_types={key: pa.string() for key in indices.values()},
-                    strings_can_be_null=False,
-                ),
-            )
+            table = self._parse(body, unique, list(indices.values()), skip)
         except pa.ArrowInvalid as error:
-            raise BrokenFile(f"{self.path}: cannot be read as a table: {_first(error)}") from error
+            if "UTF8" not in str(error):
+                raise BrokenFile(f"{self.path}: cannot be read as a table: {_said(error)}") from error
+            # Bytes of another encoding must not stop the rows that have none.
+            ragged.clear()
+            body = memoryview(bytes(body).decode("utf-8", "replace").encode())
+            table = self._parse(body, unique, list(indices.values()), skip)
+            warnings.append("some bytes are not UTF-8; they are read as \N{REPLACEMENT CHARACTER}")
         total = table.num_rows + len(ragged)
         kept = np.ones(total, dtype=bool)
         kept[[number - 1 for number, _, _ in ragged]] = False
         columns = {name: _one_chunk(table.column(key)) for name, key in indices.items()}
-        return Content(columns, np.flatnonzero(kept) + 1, ragged)
+        return Content(columns, np.flatnonzero(kept) + 1, ragged, warnings)
+
+    def _parse(self, body: memoryview, names: list[str], wanted: list[str], skip: Any) -> pa.Table:
+        import pyarrow as pa
+        import pyarrow.csv
+
+        return pa.csv.read_csv(
+            pa.BufferReader(pa.py_buffer(body)),
+            # One thread, so that a skipped row knows its number.
+            read_options=pa.csv.ReadOptions(column_names=names, use_threads=False, block_size=_LONGEST_LINE),
+            parse_options=pa.csv.ParseOptions(
+                delimiter=self._delimiter, invalid_row_handler=skip, newlines_in_values=b'"' in self._data
+            ),
+            # Everything as text: a column's type must not hang on what its first rows look like.
+            convert_options=pa.csv.ConvertOptions(
+                include_columns=wanted,
+                column_types={key: pa.string() for key in wanted},
+                strings_can_be_null=False,
+            ),
+        )
 
 
 class _Astropy:
@@ -217,6 +251,8 @@ class _Astropy:
 def _arrow_from_astropy(column: Any, name: str, path: Path) -> pa.Array:
     import pyarrow as pa
 
+    if hasattr(column, "utc") and hasattr(column, "scale"):  # instants of a stated scale
+        column = column.utc.datetime64
     values = np.asarray(getattr(column, "value", column))
     mask = np.asarray(column.mask) if getattr(column, "mask", None) is not None else None
     if values.ndim != 1:
@@ -287,6 +323,16 @@ def _is_number(word: str) -> bool:
     except ValueError:
         return False
     return True
+
+
+def _said(error: BaseException) -> str:
+    """Arrow's message, put in the words of whoever wrote the file where it speaks of its own insides."""
+    text = _first(error)
+    return f"a line is longer than {_LONGEST_LINE >> 20} MB" if "straddl" in text else text
+
+
+def _short(text: str) -> str:
+    return text if len(text) <= 60 else text[:57] + "..."
 
 
 def _first(error: BaseException) -> str:

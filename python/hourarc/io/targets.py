@@ -160,12 +160,16 @@ def read_targets(
         for key, column in of_limits.items()
     }
     time = _time(found["time"], content.columns, faults, layout.missing, path) if with_time else None
-    warnings = [w for w in (_hours_suspected(found["ra"], result["ra"], faults.good),) if w]
+    hours = _hours_suspected(found["ra"], result["ra"], faults.good)
+    warnings = [*content.warnings, *([hours] if hours else [])]
     if "epoch" not in found and any(key in found for key in ("pmra", "pmdec")):
         notes.append(
             "no column for the epoch: proper motions are counted from J2000.0 (or say epoch in [columns])"
         )
     name = _names(found.get("name"), content.columns, content.row)
+    if not with_time and (shared := len(name) - len(name.unique())):
+        have = "row has" if shared == 1 else "rows have"
+        notes.append(f"{shared:,} {have} the name of an earlier one; their numbers tell them apart")
 
     rejected = Rejected()
     for number, text, fault in content.ragged:

@@ -25,9 +25,12 @@ class WholeFiles:
         path = Path(path)
         passing = _new_file_beside(path)
         self._pending.append((passing, path))
-        yield passing
-        with open(passing, "rb+") as handle:
-            os.fsync(handle.fileno())
+        try:
+            yield passing
+            with open(passing, "rb+") as handle:
+                os.fsync(handle.fileno())
+        except OSError as error:
+            raise _about(path, error) from error
 
     def commit(self) -> list[Path]:
         """Renames the files in the reverse of the order in which they were created, the first one last."""
@@ -67,8 +70,15 @@ def _new_file_beside(path: Path) -> Path:
             os.close(os.open(passing, os.O_CREAT | os.O_EXCL | os.O_WRONLY, 0o666))
         except FileExistsError:
             continue
+        except OSError as error:
+            raise _about(path, error) from error
         return passing
     raise FileExistsError(f"{path}: the folder is full of unfinished files of this name")
+
+
+def _about(path: Path, error: OSError) -> OSError:
+    """The error with the name of the result, which the caller knows, for that of the passing file."""
+    return OSError(error.errno, os.strerror(error.errno), str(path)) if error.errno else error
 
 
 def _flush_folder(folder: Path) -> None:
