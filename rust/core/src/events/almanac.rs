@@ -27,7 +27,7 @@ const HORIZON_REFRACTION_DEG: f64 = 34.0 / 60.0;
 /// Radius of the Moon in equatorial radii of the Earth (IAU 1982; Urban & Seidelmann (2013) table 11.1).
 const MOON_RADIUS: f64 = 0.272_507_6;
 /// Mean synodic month, days (Urban & Seidelmann (2013) §11.2.1).
-const SYNODIC_MONTH_D: f64 = 29.530_588_86;
+pub(crate) const SYNODIC_MONTH_D: f64 = 29.530_588_86;
 /// Nights in one call: two centuries, all that the ephemeris holds.
 const MOST_NIGHTS: usize = 75_000;
 
@@ -232,10 +232,10 @@ impl MoonPhase {
         let (earth, sun, moon) = positions(observer, tai)?;
         // Angle at the Moon between the Sun and the Earth.
         let phase_angle = angle(sub(sun, moon), sub(earth, moon));
-        let mut age_d = elongation(observer, tai)?.rem_euclid(TURN) / TURN * SYNODIC_MONTH_D;
+        let mut age_d = moon_elongation(observer, tai)?.rem_euclid(TURN) / TURN * SYNODIC_MONTH_D;
         // The elongation grows by 10° to 15° a day: each step leaves a fifth of the error or less.
         for _ in 0..12 {
-            let elongation = elongation(observer, tai.plus_seconds(-age_d * 86_400.0))?;
+            let elongation = moon_elongation(observer, tai.plus_seconds(-age_d * 86_400.0))?;
             let step = (elongation - TURN * (elongation / TURN).round()) / TURN * SYNODIC_MONTH_D;
             age_d += step;
             if step.abs() < 1e-7 {
@@ -263,7 +263,10 @@ fn positions(
 ///
 /// Geometric for the Moon; for the Sun the aberration of 20″ is applied as such (the Moon's own is its
 /// light time, 0.7″, which is a second and a half of time and left out).
-fn elongation(observer: &Observer<'_>, tai: Instant<Tai>) -> std::result::Result<f64, Status> {
+pub(crate) fn moon_elongation(
+    observer: &Observer<'_>,
+    tai: Instant<Tai>,
+) -> std::result::Result<f64, Status> {
     let tt = tai.to_tt();
     let (earth, sun, moon) = positions(observer, tai)?;
     let to_equator = bias_precession_nutation(tt);

@@ -3,9 +3,8 @@
 use super::arc::Arc;
 use super::crossing::{Crossing, Culmination, DayPath};
 use super::days::Days;
-use super::scatter::horizon_scatter;
+use super::passing::{Passing, ROUNDING_S, altitude_passing, passing};
 use crate::astrometry::Targets;
-use crate::constants::SECONDS_PER_DAY;
 use crate::error::Status;
 use crate::horizon::{altitude, azimuth};
 use crate::time::Utc;
@@ -37,6 +36,9 @@ pub struct Event {
     pub computed_error_s: f64,
     /// Standard deviation by which refraction strays from the stated atmosphere, seconds.
     pub horizon_scatter_s: f64,
+    /// Whether the culmination lies nearer to the threshold than the errors of direction and refraction
+    /// (one standard deviation) together: then the target may not pass it at all. Never for a transit.
+    pub may_not_happen: bool,
 }
 
 /// What a target does over a span.
@@ -73,6 +75,19 @@ pub fn rise_transit_set(
     threshold: f64,
     events: &mut Vec<Event>,
 ) -> (Passage, Status) {
+    rise_transit_set_with(days, targets, row, threshold, 0.0, events)
+}
+
+/// The same for a row whose catalogue place may be off by `position_error` radians in direction, which
+/// goes into `computed_error_s` and `may_not_happen`.
+pub fn rise_transit_set_with(
+    days: &Days<'_>,
+    targets: &Targets<'_>,
+    row: usize,
+    threshold: f64,
+    position_error: f64,
+    events: &mut Vec<Event>,
+) -> (Passage, Status) {
     let status = targets.status(row);
     if status.is_bad() {
         return (Passage::BadRow, status);
@@ -85,10 +100,10 @@ pub fn rise_transit_set(
         let above = match targets {
             Targets::Catalog(catalog) => {
                 let path = days.star(index, &catalog.star(row));
-                day_events(days, arc, &path, topocentric, &mut scratch, events)
+                day_events(days, arc, &path, (topocentric, position_error), &mut scratch, events)
             }
             Targets::Bodies(bodies) => match days.body(index, bodies[row]) {
-                Ok(path) => day_events(days, arc, &path, topocentric, &mut scratch, events),
+                Ok(path) => day_events(days, arc, &path, (topocentric, position_error), &mut scratch, events),
                 Err(status) => {
                     events.truncate(before);
                     return (Passage::BadRow, status);
@@ -114,7 +129,7 @@ fn day_events<P: DayPath>(
     days: &Days<'_>,
     arc: &Arc<'_>,
     path: &P,
-    threshold: f64,
+    (threshold, position_error): (f64, f64),
     scratch: &mut Scratch,
     events: &mut Vec<Event>,
 ) -> bool {
@@ -126,14 +141,14 @@ fn day_events<P: DayPath>(
     let mut above = above_at_midnight;
     for crossing in &scratch.crossings {
         let kind = if crossing.rising { EventKind::Rise } else { EventKind::Set };
-        let event = event(days, arc, path, kind, crossing.at);
+        let event = event(days, arc, path, position_error, kind, crossing.at);
         if event.time.nanoseconds() < days.start.nanoseconds() {
             above = crossing.rising;
         }
         events.push(event);
     }
     for culmination in scratch.culminations.iter().filter(|culmination| culmination.upper) {
-        events.push(event(days, arc, path, EventKind::Transit, culmination.at));
+        events.push(event(days, arc, path, position_error, EventKind::Transit, culmination.at));
     }
     let span = days.start.nanoseconds()..days.stop.nanoseconds();
     let mut kept = before;
@@ -148,52 +163,32 @@ fn day_events<P: DayPath>(
     above
 }
 
-fn event<P: DayPath>(days: &Days<'_>, arc: &Arc<'_>, path: &P, kind: EventKind, at: f64) -> Event {
+fn event<P: DayPath>(
+    days: &Days<'_>,
+    arc: &Arc<'_>,
+    path: &P,
+    position_error: f64,
+    kind: EventKind,
+    at: f64,
+) -> Event {
     let (local, rate) = path.local_and_rate(arc, at);
-    let refraction = arc.observer.refraction;
-    let observed = refraction.observed_altitude(altitude(local));
-    let angle_error = path.error_rad() + arc.pole_error;
-    let (error_s, scatter_s) = match kind {
+    let observed = arc.observer.refraction.observed_altitude(altitude(local));
+    let angle_error = path.error_rad() + arc.pole_error + position_error;
+    let sure = match kind {
         EventKind::Transit => {
             // Across the meridian the direction moves in azimuth: cos h · dA/dt is the rate eastwards.
-            (seconds(angle_error, rate[1].abs(), f64::INFINITY), 0.0)
+            let (error_s, _) = passing(angle_error, rate[1], 0.0);
+            Passing { computed_error_s: error_s + arc.ut1_error_s + ROUNDING_S, ..Passing::default() }
         }
-        EventKind::Rise | EventKind::Set => {
-            let altitude_rate = rate[2].abs() / local[0].hypot(local[1]);
-            // Near a culmination the altitude turns over: the bound is that of a parabola.
-            let curvature = diurnal_curvature(arc, local);
-            (
-                seconds(angle_error, altitude_rate, curvature),
-                seconds(horizon_scatter(refraction, observed), altitude_rate, f64::INFINITY),
-            )
-        }
+        EventKind::Rise | EventKind::Set => altitude_passing(arc, local, rate, observed, angle_error),
     };
     Event {
         kind,
         time: days.utc(arc, at),
         azimuth: azimuth(local),
         altitude: observed,
-        computed_error_s: error_s + arc.ut1_error_s + ROUNDING_S,
-        horizon_scatter_s: scatter_s,
+        computed_error_s: sure.computed_error_s,
+        horizon_scatter_s: sure.horizon_scatter_s,
+        may_not_happen: sure.may_not_happen,
     }
-}
-
-/// Rounding of the instant, of Newton's last step and of TDB, seconds.
-const ROUNDING_S: f64 = 1e-5;
-
-/// The size of d²(sin h)/dt² a day² at culmination: cos φ cos δ ω².
-fn diurnal_curvature(arc: &Arc<'_>, local: [f64; 3]) -> f64 {
-    let sin_declination = crate::horizon::sin_declination(local, arc.latitude);
-    let cos_declination = (1.0 - sin_declination * sin_declination).max(0.0).sqrt();
-    let turn = crate::constants::EARTH_ROTATION_RAD_PER_S * SECONDS_PER_DAY;
-    arc.latitude.cos * cos_declination * turn * turn
-}
-
-/// Seconds in which an angle is passed at a rate a day, at most those to pass it from rest, at most a day.
-fn seconds(angle: f64, rate_per_day: f64, curvature_per_day2: f64) -> f64 {
-    let by_rate = angle / rate_per_day;
-    let from_rest =
-        if curvature_per_day2.is_finite() { (2.0 * angle / curvature_per_day2).sqrt() } else { 1.0 };
-    let days = by_rate.min(from_rest);
-    if days < 1.0 { days * SECONDS_PER_DAY } else { SECONDS_PER_DAY }
 }

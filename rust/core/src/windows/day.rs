@@ -1,12 +1,12 @@
 //! The limits on one day: what all targets share is worked out once.
 
 use super::intervals::{Interval, IntervalSet};
-use super::limits::Limits;
+use super::limits::kinds::fill_intervals;
+use super::limits::{Keepout, Limits, MoonLightDay, MoonPhaseDay, Nodes, PhaseDay};
 use super::reason::Cause;
-use super::separation::{Keepout, Nodes};
 use crate::ephemeris::Body;
-use crate::error::Status;
-use crate::events::{Arc, BODY_NODES, Days, directions_at, node_fraction};
+use crate::error::{Error, Result, Status};
+use crate::events::{Arc, BODY_NODES, BodyArc, Crossing, DayPath, Days, node_fraction};
 use crate::math::chebyshev::Chebyshev;
 use crate::math::vector::{angle, sub};
 
@@ -16,18 +16,21 @@ pub(super) const DAY: u8 = u8::MAX;
 /// A limit on the sky itself, the same for every target but perhaps not its value.
 #[derive(Debug, Clone)]
 pub(super) struct SkyLimit {
+    pub cause: Cause,
     /// The quantity that must not exceed the limit, over the day.
     pub quantity: Chebyshev<BODY_NODES>,
-    pub cause: Cause,
+    /// The same at the beginning and the end, equal bits on the two days that meet there.
+    ends: [f64; 2],
 }
 
 impl SkyLimit {
     /// Makes `set` the part of `range` in which the quantity is at most `most`.
     pub fn fill(&self, most: f64, range: Interval, set: &mut IntervalSet) {
         let below = self.quantity.combine(-1.0, &self.quantity, 0.0).plus(most);
-        let crossings = below.crossings();
+        let [start, stop] = self.ends.map(|value| value <= most);
+        let crossings = below.crossings_between(start, stop);
         let changes = crossings.iter().map(|crossing| (crossing.at, crossing.rising));
-        set.fill_from_changes(range, below.value(0.0) >= 0.0, changes, self.cause as u8);
+        set.fill_from_changes(range, start, changes, self.cause as u8);
     }
 }
 
@@ -36,52 +39,69 @@ impl SkyLimit {
 pub(super) struct LimitedDay {
     /// The part of the day that belongs to the span.
     pub range: Interval,
-    /// Where the limits that are the same for all targets hold, one step a limit in the order of
-    /// [`LimitedDay::sky`].
+    /// Where all limits hold that are the same for all targets.
     pub shared: IntervalSet,
-    /// Which of the shared limits left anything, in order.
+    /// Each of those limits, where it alone holds, in order.
+    pub alone: Vec<(Cause, IntervalSet)>,
+    /// After which of them something was left, in order.
     pub shared_left: Vec<(Cause, bool)>,
-    /// Limits on the sky whose values differ from target to target.
-    pub each: Vec<SkyLimit>,
+    /// Which of them took the beginning and the end of the day.
+    pub lost: [Cause; 2],
+    /// Limits on the sky: one value for all targets or one each.
+    pub sky: Vec<SkyLimit>,
     pub nodes: Option<Nodes>,
     pub sun: Option<Keepout>,
     pub moon: Option<Keepout>,
+    /// Where the Moon is so low that distances from it are lifted, for either limit.
+    pub moon_down: Option<[IntervalSet; 2]>,
+    pub moon_phase: Option<MoonPhaseDay>,
+    pub moon_light: Option<MoonLightDay>,
+    pub phase: Option<PhaseDay>,
 }
 
 impl LimitedDay {
-    pub fn new(days: &Days<'_>, index: usize, limits: &Limits) -> std::result::Result<Self, Status> {
+    pub fn new(days: &Days<'_>, index: usize, limits: &Limits) -> Result<Self> {
         let arc = &days.arcs[index];
         let (start, stop) = days.part(arc);
         let edge = |is_span: bool| if is_span { Cause::Span as u8 } else { DAY };
-        let range = Interval {
-            start,
-            stop,
-            start_reason: edge(index == 0),
-            stop_reason: edge(index + 1 == days.arcs.len()),
-        };
+        // The last day of a span that ends with the day before is empty.
+        let is_last = index + 1 == days.arcs.len()
+            || (index + 2 == days.arcs.len() && days.part(&days.arcs[index + 1]).1 <= 0.0);
+        let range = Interval { start, stop, start_reason: edge(index == 0), stop_reason: edge(is_last) };
         let mut shared = IntervalSet::new();
         shared.push(range);
         let mut day = LimitedDay {
             range,
             shared,
+            alone: Vec::new(),
             shared_left: Vec::new(),
-            each: Vec::new(),
+            lost: [Cause::None; 2],
+            sky: Vec::new(),
             nodes: None,
             sun: None,
             moon: None,
+            moon_down: None,
+            moon_phase: None,
+            moon_light: None,
+            phase: None,
         };
-        day.add_sky_limits(arc, limits)?;
-        if limits.sun_separation_min.is_some() || limits.moon_separation_min.is_some() {
-            let nodes = Nodes::new(arc)?;
-            day.sun = (limits.sun_separation_min.as_ref())
-                .map(|_| Keepout::new(arc, &nodes, Body::Sun))
-                .transpose()?;
-            day.moon = (limits.moon_separation_min.as_ref())
-                .map(|_| Keepout::new(arc, &nodes, Body::Moon))
-                .transpose()?;
-            day.nodes = Some(nodes);
+        day.add_sky_limits(arc, limits).map_err(outside)?;
+        if let Some(intervals) = &limits.allowed_intervals {
+            let mut set = IntervalSet::new();
+            fill_intervals(arc, intervals, range, Cause::AllowedIntervals as u8, &mut set)?;
+            day.share(Cause::AllowedIntervals, set);
         }
+        day.add_bodies(arc, limits).map_err(outside)?;
         Ok(day)
+    }
+
+    /// Takes in a limit that is the same for all targets.
+    fn share(&mut self, cause: Cause, set: IntervalSet) {
+        let before = ends_of(&self.shared, self.range);
+        self.shared.intersect(&set, &mut IntervalSet::new());
+        note_lost(&mut self.lost, before, ends_of(&self.shared, self.range), cause);
+        self.shared_left.push((cause, !self.shared.is_empty()));
+        self.alone.push((cause, set));
     }
 
     fn add_sky_limits(&mut self, arc: &Arc<'_>, limits: &Limits) -> std::result::Result<(), Status> {
@@ -89,33 +109,99 @@ impl LimitedDay {
             return Ok(());
         }
         let skies = arc.skies::<BODY_NODES>()?;
-        let (mut set, mut scratch) = (IntervalSet::new(), IntervalSet::new());
         for (cause, column) in limits.sky() {
             let Some(column) = column else { continue };
-            let samples: Vec<f64> = match cause {
-                Cause::SunAltitudeMax => {
-                    directions_at(arc, &skies, Body::Sun)?.iter().map(|local| local[2]).collect()
-                }
-                Cause::MoonAltitudeMax => {
-                    directions_at(arc, &skies, Body::Moon)?.iter().map(|local| local[2]).collect()
-                }
-                _ => (0..BODY_NODES)
-                    .map(|j| moon_illumination(arc, node_fraction::<BODY_NODES>(j)))
-                    .collect::<std::result::Result<_, Status>>()?,
+            let of_body = |body: Body| {
+                let path = BodyArc::new(arc, &skies, body)?;
+                Ok((path.component(2), path.ends.map(|local| local[2])))
             };
-            let mut next = samples.iter();
-            let quantity = Chebyshev::fit(0.0, 1.0, |_| next.next().copied().unwrap_or(f64::NAN));
-            let limit = SkyLimit { quantity, cause };
+            let (quantity, ends) = match cause {
+                Cause::SunAltitudeMax => of_body(Body::Sun)?,
+                Cause::MoonAltitudeMax => of_body(Body::Moon)?,
+                _ => (
+                    illumination::<BODY_NODES>(arc)?,
+                    [moon_illumination(arc, 0.0)?, moon_illumination(arc, 1.0)?],
+                ),
+            };
+            let limit = SkyLimit { cause, quantity, ends };
             if let Some(most) = column.shared() {
+                let mut set = IntervalSet::new();
                 limit.fill(Limits::as_quantity(cause, most), self.range, &mut set);
-                self.shared.intersect(&set, &mut scratch);
-                self.shared_left.push((cause, !self.shared.is_empty()));
-            } else {
-                self.each.push(limit);
+                self.share(cause, set);
             }
+            self.sky.push(limit);
         }
         Ok(())
     }
+
+    fn add_bodies(&mut self, arc: &Arc<'_>, limits: &Limits) -> std::result::Result<(), Status> {
+        let from_sun = limits.sun_separation_min.is_some();
+        let from_moon = limits.moon_separation_min.is_some() || limits.moon_avoidance.is_some();
+        let by_moonlight = limits.sky_brightness_min_v.is_some();
+        if from_sun || from_moon {
+            self.nodes = Some(Nodes::new(arc)?);
+        }
+        let skies =
+            if from_sun || from_moon || by_moonlight { arc.skies::<BODY_NODES>()? } else { Vec::new() };
+        if let (Some(nodes), true) = (&self.nodes, from_sun) {
+            let path = BodyArc::new(arc, &skies, Body::Sun)?;
+            self.sun = Some(Keepout::new(arc, nodes, Body::Sun, path)?);
+        }
+        if let (Some(nodes), true) = (&self.nodes, from_moon) {
+            let path = BodyArc::new(arc, &skies, Body::Moon)?;
+            self.moon_down = limits.moon_down_relaxes.map(|altitude| {
+                [Cause::MoonSeparationMin, Cause::MoonAvoidance].map(|cause| {
+                    let mut crossings: Vec<Crossing> = Vec::new();
+                    let up = path.altitude_crossings(arc, altitude.sin(), &mut crossings);
+                    let changes = crossings.iter().map(|crossing| (crossing.at, !crossing.rising));
+                    let mut down = IntervalSet::new();
+                    down.fill_from_changes(self.range, !up, changes, cause as u8);
+                    down
+                })
+            });
+            self.moon = Some(Keepout::new(arc, nodes, Body::Moon, path)?);
+        }
+        if limits.moon_avoidance.is_some() {
+            self.moon_phase = Some(MoonPhaseDay::new(arc, illumination(arc)?)?);
+        }
+        if by_moonlight {
+            let path = BodyArc::new(arc, &skies, Body::Moon)?;
+            self.moon_light = Some(MoonLightDay::new(arc, path, &illumination(arc)?));
+        }
+        if let Some(phase) = &limits.phase {
+            self.phase = Some(PhaseDay::new(arc, phase.scale)?);
+        }
+        Ok(())
+    }
+}
+
+fn outside(status: Status) -> Error {
+    Error::invalid("the span", status.word(), "a span within the ephemeris")
+}
+
+/// Whether a set holds the beginning and the end of a range.
+pub(super) fn ends_of(set: &IntervalSet, range: Interval) -> [bool; 2] {
+    [
+        set.first().is_some_and(|first| first.start <= range.start),
+        set.last().is_some_and(|last| last.stop >= range.stop),
+    ]
+}
+
+/// Notes which limit took an end of a day.
+pub(super) fn note_lost(lost: &mut [Cause; 2], before: [bool; 2], after: [bool; 2], cause: Cause) {
+    for end in 0..2 {
+        if before[end] && !after[end] {
+            lost[end] = cause;
+        }
+    }
+}
+
+fn illumination<const N: usize>(arc: &Arc<'_>) -> std::result::Result<Chebyshev<N>, Status> {
+    let samples: Vec<f64> = (0..N)
+        .map(|j| moon_illumination(arc, node_fraction::<N>(j)))
+        .collect::<std::result::Result<_, Status>>()?;
+    let mut next = samples.into_iter();
+    Ok(Chebyshev::fit(0.0, 1.0, |_| next.next().unwrap_or(f64::NAN)))
 }
 
 /// Illuminated fraction of the Moon's disc from the Earth's centre: (1 + cos i)/2 with the angle i at

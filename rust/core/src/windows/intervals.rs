@@ -1,7 +1,7 @@
 //! Sets of half-open intervals [start, stop), each edge with its reason; no astronomical word.
 //!
-//! The abscissa is whatever the caller counts in. Intervals of a set are in order, apart from each
-//! other and not empty, and stay so under every operation here. When two edges coincide the set that
+//! The abscissa is whatever the caller counts in. Intervals of a set are in order, do not overlap
+//! and are not empty, and stay so under every operation here. When two edges coincide the set that
 //! came first keeps its reason.
 
 /// Why an edge is where it is: a small code that the caller gives a meaning.
@@ -71,6 +71,14 @@ impl IntervalSet {
                 }
             }
             _ => self.intervals.push(interval),
+        }
+    }
+
+    /// The same, but one that begins where the last ends stays apart from it: there is a reason between.
+    pub fn push_apart(&mut self, interval: Interval) {
+        let after = self.intervals.last().is_none_or(|last| last.stop <= interval.start);
+        if after && interval.start < interval.stop {
+            self.intervals.push(interval);
         }
     }
 

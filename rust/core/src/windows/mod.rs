@@ -5,12 +5,16 @@
 //! reason of the limit that set it.
 
 mod day;
+mod explain;
 pub mod intervals;
 mod limits;
 mod reason;
-mod separation;
+mod slots;
+mod sure;
 mod target;
 
-pub use limits::{Column, Limits};
+pub use explain::{Explanation, LimitExplained, UtcInterval};
+pub use limits::{Column, Limits, MoonAvoidance, MoonLight, Phase, PhaseScale, SkyModel, sky_brightness};
 pub use reason::Cause;
+pub use slots::{Slots, slots, windows_after_gap};
 pub use target::{LimitedSpan, TargetWindows, Window, Workspace};

@@ -1,16 +1,21 @@
 //! The windows of one target over a span.
 
-use super::day::{DAY, LimitedDay};
-use super::intervals::{Interval, IntervalSet};
-use super::limits::{Column, Limits};
+use super::day::{DAY, LimitedDay, ends_of, note_lost};
+use super::intervals::IntervalSet;
+use super::limits::kinds::{
+    fill_altitude, fill_azimuth_rate, fill_brightness, fill_declination, fill_hour_angle, fill_sectors,
+    fill_skyline, split_by_cables,
+};
+use super::limits::{AzimuthWalk, Branch, Column, Limits, Lines, Turning};
 use super::reason::Cause;
-use crate::astrometry::Targets;
+use super::sure;
+use crate::astrometry::{Star, Targets};
 use crate::error::{Error, Result, Status};
-use crate::events::{Arc, Crossing, DayPath, Days};
-use crate::horizon::{altitude, hour_angle};
-use crate::math::chebyshev::Chebyshev;
+use crate::events::{Crossing, DayPath, Days, Passing, StarArc};
+use crate::horizon::altitude;
+use crate::math::vector::Vector;
 use crate::time::Utc;
-use std::f64::consts::FRAC_PI_2;
+use std::f64::consts::{FRAC_PI_2, PI};
 
 /// A half-open interval of UTC in which every limit holds.
 #[derive(Debug, Clone, Copy)]
@@ -27,6 +32,18 @@ pub struct Window {
     pub best_airmass: f64,
     /// When that is.
     pub best_time: Utc,
+    /// How far the computed start may be from the true one for the stated atmosphere, seconds.
+    pub start_error_s: f64,
+    /// The same for the stop.
+    pub stop_error_s: f64,
+    /// Standard deviation by which refraction moves the start, seconds; 0 above 15° and where no altitude
+    /// of the target sets the edge.
+    pub start_scatter_s: f64,
+    /// The same for the stop.
+    pub stop_scatter_s: f64,
+    /// Whether an edge is a grazing: its limit may not be passed at all, and the window may be longer,
+    /// joined to its neighbour, or not be.
+    pub may_not_happen: bool,
 }
 
 /// What came of one target; the windows themselves are appended to the caller's list.
@@ -34,33 +51,49 @@ pub struct Window {
 pub struct TargetWindows {
     /// What is to be said of the row.
     pub status: Status,
-    /// The limit that left nothing, [`Cause::None`] when there is a window. Limits are applied in the
-    /// order Sun altitude, Moon altitude, Moon illumination, altitude and airmass, hour angle, Sun
-    /// separation, Moon separation, shortest window: named is the first after which nothing is left in
-    /// the whole span.
+    /// The limit that left nothing, [`Cause::None`] when there is a window. Limits are applied in
+    /// [`Cause::ORDER`], those that are the same for all targets first: named is the first after which
+    /// nothing is left in the whole span.
     pub blocked_by: Cause,
 }
 
 /// A span under limits: what all targets share, worked out once.
 #[derive(Debug)]
 pub struct LimitedSpan<'a> {
-    days: &'a Days<'a>,
-    limits: &'a Limits,
-    limited: Vec<LimitedDay>,
-    airmass_altitude: Option<Column>,
+    pub(super) days: &'a Days<'a>,
+    pub(super) limits: &'a Limits,
+    pub(super) limited: Vec<LimitedDay>,
+    /// The limits that are asked target by target, in order.
+    pub(super) each: Vec<Cause>,
+    /// The same without those that another one makes needless.
+    needed: Vec<Cause>,
+    lower: Threshold,
+    upper: Threshold,
+    by_airmass: Threshold,
+    pub(super) lines: Option<Lines>,
+    pub(super) position_error: Option<Column>,
+    has_columns: bool,
 }
+
+/// A limit in altitude as the sine of the topocentric altitude: computed once where it is one for all.
+#[derive(Debug, Clone, Copy)]
+struct Threshold(Option<f64>);
 
 /// Space to work in, kept from target to target.
 #[derive(Debug, Default)]
 pub struct Workspace {
     left: IntervalSet,
-    set: IntervalSet,
-    scratch: IntervalSet,
+    pub(super) set: IntervalSet,
+    pub(super) scratch: IntervalSet,
     crossings: Vec<Crossing>,
     changes: Vec<(f64, bool)>,
     highest: Vec<f64>,
+    walk: AzimuthWalk,
+    branch: Option<Branch>,
     pieces: Vec<Piece>,
     stages: Vec<(Cause, bool)>,
+    /// Which limits took the beginning and the end of each day.
+    lost: Vec<[Cause; 2]>,
 }
 
 /// Part of a window within one day.
@@ -72,36 +105,106 @@ struct Piece {
     stop_reason: u8,
     best: (usize, f64),
     best_sin_altitude: f64,
+    start_sure: Passing,
+    stop_sure: Passing,
 }
 
 impl<'a> LimitedSpan<'a> {
     /// Works out what the targets share.
     ///
     /// # Errors
-    /// Limits that do not fit the number of targets or their ranges, or a span outside the ephemeris.
+    /// Limits that do not fit the number of targets, their ranges or each other, a skyline asked of a site
+    /// that has none, or a span outside the ephemeris.
     pub fn new(days: &'a Days<'a>, limits: &'a Limits, targets: usize) -> Result<Self> {
         limits.check(targets)?;
         let limited = (0..days.arcs.len())
             .map(|index| LimitedDay::new(days, index, limits))
-            .collect::<std::result::Result<Vec<_>, Status>>()
-            .map_err(|status| Error::invalid("the span", status.word(), "a span within the ephemeris"))?;
-        let refraction = days.observer().refraction;
-        let altitude_of = |airmass: f64| limits.airmass_model.observed_altitude(airmass, refraction);
-        let airmass_altitude = match &limits.airmass_max {
-            None => None,
-            Some(Column::All(airmass)) => Some(Column::All(altitude_of(*airmass)?)),
-            // A bad value is the row's own affair: Limits::status marks it.
-            Some(Column::Each(values)) => Some(Column::Each(
-                values.iter().map(|&airmass| altitude_of(airmass).unwrap_or(f64::NAN)).collect(),
-            )),
+            .collect::<Result<Vec<_>>>()?;
+        let observer = days.observer();
+        let refraction = observer.refraction;
+        let sine = |observed: f64| refraction.topocentric_altitude(observed).sin();
+        let shared = |column: &Option<Column>| Threshold(column.as_ref().and_then(Column::shared).map(sine));
+        let by_airmass = match limits.airmass_max.as_ref().and_then(Column::shared) {
+            Some(airmass) => {
+                Threshold(Some(sine(limits.airmass_model.observed_altitude(airmass, refraction)?)))
+            }
+            None => Threshold(None),
         };
-        Ok(LimitedSpan { days, limits, limited, airmass_altitude })
+        let lines = match (limits.use_skyline, observer.site.skyline()) {
+            (true, Some(skyline)) => Some(Lines::new(skyline, refraction)),
+            (true, None) => {
+                return Err(Error::invalid("use_skyline", "true", "a site that has a skyline"));
+            }
+            (false, _) => None,
+        };
+        let is_shared = |cause: Cause| limited[0].alone.iter().any(|alone| alone.0 == cause);
+        let each: Vec<Cause> = Cause::ORDER
+            .into_iter()
+            .filter(|&cause| limits.has(cause) && cause != Cause::WindowMin && !is_shared(cause))
+            .collect();
+        let mut span = LimitedSpan {
+            days,
+            limits,
+            limited,
+            needed: Vec::new(),
+            each,
+            lower: shared(&limits.altitude_min),
+            upper: shared(&limits.altitude_max),
+            by_airmass,
+            lines,
+            position_error: None,
+            has_columns: limits.has_columns(),
+        };
+        span.needed = span.each.iter().copied().filter(|&cause| !span.is_needless(cause)).collect();
+        Ok(span)
+    }
+
+    /// Whether another limit, the same for all targets too, says as much and more.
+    fn is_needless(&self, cause: Cause) -> bool {
+        let highest = match (self.lower.0, self.by_airmass.0) {
+            (Some(a), Some(b)) => Some(a.max(b)),
+            (a, b) => a.or(b),
+        };
+        match (cause, self.lower.0, self.by_airmass.0) {
+            (Cause::AltitudeMin, Some(lower), Some(airmass)) => airmass > lower,
+            (Cause::AirmassMax, Some(lower), Some(airmass)) => lower >= airmass,
+            (Cause::Skyline, _, _) => {
+                self.lines.as_ref().zip(highest).is_some_and(|(lines, lowest)| lowest >= lines.sin_highest())
+            }
+            _ => false,
+        }
+    }
+
+    /// Takes into account that the catalogue place of each target may be off by so much, radians: it goes
+    /// into the windows' errors.
+    ///
+    /// # Errors
+    /// A column of the wrong length, or a value for all that is negative or not a number.
+    pub fn with_position_error(mut self, error: Column, targets: usize) -> Result<Self> {
+        match &error {
+            Column::Each(values) if values.len() != targets => {
+                let given = format!("{} values", values.len());
+                return Err(Error::invalid("position_error", given, format!("one value, or {targets}")));
+            }
+            Column::All(value) if !(0.0..=PI).contains(value) => {
+                return Err(Error::invalid("position_error", value, "0 to π"));
+            }
+            _ => {}
+        }
+        self.position_error = Some(error);
+        Ok(self)
+    }
+
+    /// What is to be said of a row before anything is computed.
+    pub(super) fn status(&self, targets: &Targets<'_>, row: usize) -> Status {
+        let status = targets.status(row);
+        if self.has_columns { status.worst(self.limits.status(row)) } else { status }
     }
 
     /// Appends the windows of target `row`, in order of time.
     ///
     /// Edges agree with the exact chain as the events do: 1 ms for stars, 20 ms where the Sun or the
-    /// Moon sets them (`tests/test_accuracy_windows.py`).
+    /// Moon sets them (`tests/test_accuracy_windows.py`; every limit by brute force in `tests/windows.rs`).
     pub fn windows(
         &self,
         targets: &Targets<'_>,
@@ -109,31 +212,43 @@ impl<'a> LimitedSpan<'a> {
         workspace: &mut Workspace,
         windows: &mut Vec<Window>,
     ) -> TargetWindows {
-        let status = targets.status(row).worst(self.limits.status(row));
+        let status = self.status(targets, row);
         if status.is_bad() {
             return TargetWindows { status, blocked_by: Cause::BadRow };
         }
         workspace.pieces.clear();
         workspace.stages.clear();
-        for index in 0..self.limited.len() {
-            match targets {
-                Targets::Catalog(catalog) => {
-                    // A day that is all daylight costs no chain.
-                    if self.shared_is_empty(index, workspace) {
-                        continue;
-                    }
-                    let path = self.days.star(index, &catalog.star(row));
-                    self.day(index, &path, row, workspace);
+        workspace.lost.clear();
+        workspace.branch = None;
+        let star = match targets {
+            Targets::Catalog(catalog) => Some(catalog.star(row)),
+            Targets::Bodies(_) => None,
+        };
+        let mut yesterday: Option<(usize, StarArc)> = None;
+        for (index, day) in self.limited.iter().enumerate() {
+            for &(cause, left) in &day.shared_left {
+                note(&mut workspace.stages, cause, left);
+            }
+            workspace.lost.push(day.lost);
+            // A day that is all daylight costs no chain.
+            if day.shared.is_empty() {
+                continue;
+            }
+            match (&star, targets) {
+                (Some(star), _) => {
+                    let arc = &self.days.arcs[index];
+                    let path = match &yesterday {
+                        Some((before, path)) if before + 1 == index => path.on_the_next_day(arc, star),
+                        _ => StarArc::new(arc, star),
+                    };
+                    self.day(index, &path, Some(star), row, workspace);
+                    yesterday = Some((index, path));
                 }
-                Targets::Bodies(bodies) => {
-                    if self.shared_is_empty(index, workspace) {
-                        continue;
-                    }
-                    match self.days.body(index, bodies[row]) {
-                        Ok(path) => self.day(index, &path, row, workspace),
-                        Err(status) => return TargetWindows { status, blocked_by: Cause::BadRow },
-                    }
-                }
+                (None, Targets::Bodies(bodies)) => match self.days.body(index, bodies[row]) {
+                    Ok(path) => self.day(index, &path, None, row, workspace),
+                    Err(status) => return TargetWindows { status, blocked_by: Cause::BadRow },
+                },
+                (None, Targets::Catalog(_)) => {}
             }
         }
         let status = status.worst(self.days.note());
@@ -142,137 +257,223 @@ impl<'a> LimitedSpan<'a> {
         TargetWindows { status, blocked_by }
     }
 
-    /// Notes what the shared limits left of a day; whether that is nothing.
-    fn shared_is_empty(&self, index: usize, workspace: &mut Workspace) -> bool {
-        let day = &self.limited[index];
-        for &(cause, left) in &day.shared_left {
-            note(&mut workspace.stages, cause, left);
-        }
-        day.shared.is_empty()
-    }
-
     /// Appends the pieces of one day.
-    fn day<P: DayPath>(&self, index: usize, path: &P, row: usize, workspace: &mut Workspace) {
-        let (arc, day) = (&self.days.arcs[index], &self.limited[index]);
-        let Workspace { left, set, scratch, stages, .. } = workspace;
+    fn day<P: Turning>(
+        &self,
+        index: usize,
+        path: &P,
+        star: Option<&Star>,
+        row: usize,
+        workspace: &mut Workspace,
+    ) {
+        let day = &self.limited[index];
+        let mut left = std::mem::take(&mut workspace.left);
+        let mut set = std::mem::take(&mut workspace.set);
         left.clone_from(&day.shared);
-        for limit in &day.each {
-            let column =
-                self.limits.sky().into_iter().find(|sky| sky.0 == limit.cause).and_then(|sky| sky.1.as_ref());
-            let Some(column) = column else { continue };
-            limit.fill(Limits::as_quantity(limit.cause, column.at(row)), day.range, set);
-            left.intersect(set, scratch);
-            note(stages, limit.cause, !left.is_empty());
-        }
-        self.altitude(arc, day.range, path, row, workspace);
-        self.hour_angle(arc, day.range, path, row, workspace);
-        self.keepout(index, path, row, workspace);
-        self.pieces(index, path, workspace);
-    }
-
-    fn altitude<P: DayPath>(
-        &self,
-        arc: &Arc<'_>,
-        range: Interval,
-        path: &P,
-        row: usize,
-        workspace: &mut Workspace,
-    ) {
-        let refraction = arc.observer.refraction;
-        let Workspace { left, set, scratch, crossings, stages, .. } = workspace;
-        let lowest = self.limits.altitude_min.as_ref().map(|column| (column.at(row), Cause::AltitudeMin));
-        let by_airmass = self.airmass_altitude.as_ref().map(|column| (column.at(row), Cause::AirmassMax));
-        // Both bound the altitude from below: the higher one is the limit.
-        let lower = match (lowest, by_airmass) {
-            (Some(a), Some(b)) => Some(if b.0 > a.0 { b } else { a }),
-            (a, b) => a.or(b),
-        };
-        let highest = self.limits.altitude_max.as_ref().map(|column| (column.at(row), Cause::AltitudeMax));
-        for (bound, upper) in [(lower, false), (highest, true)] {
-            let Some((observed, cause)) = bound else { continue };
-            if left.is_empty() || (upper && observed >= FRAC_PI_2) {
-                continue;
+        let mut lost = day.lost;
+        for &cause in &self.needed {
+            let (Some(first), Some(last)) = (left.first(), left.last()) else { break };
+            let within = (first.start, last.stop);
+            let before = ends_of(&left, day.range);
+            if cause == Cause::CableRange {
+                self.cables(index, path, &left, &mut set, workspace);
+                std::mem::swap(&mut left, &mut set);
+            } else {
+                self.fill(cause, index, path, star, row, within, workspace, &mut set);
+                left.intersect(&set, &mut workspace.scratch);
             }
-            crossings.clear();
-            let threshold = refraction.topocentric_altitude(observed).sin();
-            let above = path.altitude_crossings(arc, threshold, crossings);
-            let changes = crossings.iter().map(|crossing| (crossing.at, crossing.rising != upper));
-            set.fill_from_changes(range, above != upper, changes, cause as u8);
-            left.intersect(set, scratch);
-            note(stages, cause, !left.is_empty());
+            note_lost(&mut lost, before, ends_of(&left, day.range), cause);
+            note(&mut workspace.stages, cause, !left.is_empty());
+        }
+        if let Some(of_day) = workspace.lost.last_mut() {
+            *of_day = lost;
+        }
+        self.pieces(index, path, row, &left, workspace);
+        (workspace.left, workspace.set) = (left, set);
+    }
+
+    /// Makes `set` where one limit holds on a day; outside `within` it may be off by minutes.
+    pub(super) fn fill<P: Turning>(
+        &self,
+        cause: Cause,
+        index: usize,
+        path: &P,
+        star: Option<&Star>,
+        row: usize,
+        within: (f64, f64),
+        workspace: &mut Workspace,
+        set: &mut IntervalSet,
+    ) {
+        let (arc, day, limits) = (&self.days.arcs[index], &self.limited[index], self.limits);
+        let (part, reason) = ((day.range, within), cause as u8);
+        let value = |column: &Option<Column>, default: f64| column.as_ref().map_or(default, |c| c.at(row));
+        let Workspace { crossings, changes, walk, scratch, .. } = workspace;
+        match cause {
+            Cause::SunAltitudeMax | Cause::MoonAltitudeMax | Cause::MoonIlluminationMax => {
+                let column =
+                    limits.sky().into_iter().find(|sky| sky.0 == cause).and_then(|sky| sky.1.as_ref());
+                let limit = day.sky.iter().find(|limit| limit.cause == cause);
+                if let (Some(limit), Some(column)) = (limit, column) {
+                    limit.fill(Limits::as_quantity(cause, column.at(row)), day.range, set);
+                }
+            }
+            Cause::AltitudeMin | Cause::AirmassMax | Cause::AltitudeMax => {
+                let upper = cause == Cause::AltitudeMax;
+                match self.sin_threshold(cause, row) {
+                    Some(sine) => fill_altitude(arc, path, sine, upper, part, reason, crossings, set),
+                    None => {
+                        set.clear();
+                        set.push(day.range);
+                    }
+                }
+            }
+            Cause::Declination => {
+                let bounds = (value(&limits.declination_min, -PI), value(&limits.declination_max, PI));
+                fill_declination(arc, path, bounds, part, reason, (crossings, set, scratch));
+            }
+            Cause::HourAngle => {
+                let bounds = (value(&limits.hour_angle_min, -PI), value(&limits.hour_angle_max, PI));
+                fill_hour_angle(arc, path, bounds, part, reason, changes, set);
+            }
+            Cause::AzimuthSectors => {
+                fill_sectors(arc, path, limits.azimuth_sectors.as_deref().unwrap_or(&[]), part, reason, set);
+            }
+            Cause::AzimuthRate => {
+                let most = value(&limits.azimuth_rate_max, f64::INFINITY);
+                fill_azimuth_rate(arc, path, most, day.range, reason, set);
+            }
+            Cause::Skyline => {
+                if let Some(lines) = &self.lines {
+                    fill_skyline(arc, path, lines, part, reason, walk, crossings, set);
+                }
+            }
+            Cause::SunSeparationMin | Cause::MoonSeparationMin | Cause::MoonAvoidance => {
+                self.keepout(cause, index, path, row, set);
+            }
+            Cause::Phase => {
+                if let (Some(of_day), Some(phase)) = (&day.phase, &limits.phase) {
+                    let direction = match star {
+                        Some(star) => of_day.direction(star),
+                        None => of_day.body_direction(path.local(arc, 0.5)),
+                    };
+                    of_day.fill(phase, row, direction, day.range, reason, set);
+                }
+            }
+            Cause::SkyBrightness => {
+                if let Some(light) = &day.moon_light {
+                    let least_v = value(&limits.sky_brightness_min_v, 0.0);
+                    fill_brightness(
+                        arc,
+                        path,
+                        light,
+                        &limits.sky_model,
+                        least_v,
+                        part,
+                        reason,
+                        crossings,
+                        set,
+                    );
+                }
+            }
+            Cause::CableRange => {
+                let mut whole = IntervalSet::new();
+                whole.push(day.range);
+                self.cables(index, path, &whole, set, workspace);
+            }
+            Cause::None | Cause::Span | Cause::BadRow | Cause::WindowMin | Cause::AllowedIntervals => {
+                set.clear();
+                set.push(day.range);
+            }
         }
     }
 
-    fn hour_angle<P: DayPath>(
-        &self,
-        arc: &Arc<'_>,
-        range: Interval,
-        path: &P,
-        row: usize,
-        workspace: &mut Workspace,
-    ) {
-        const NODES: usize = 25;
-        let at = |column: &Option<Column>, default: f64| column.as_ref().map_or(default, |c| c.at(row));
-        let pi = std::f64::consts::PI;
-        let (least, most) = (at(&self.limits.hour_angle_min, -pi), at(&self.limits.hour_angle_max, pi));
-        let Workspace { left, set, scratch, changes, stages, .. } = workspace;
-        if left.is_empty() || (least <= -pi && most >= pi) {
-            return;
-        }
-        changes.clear();
-        for (bound, opens) in [(least, true), (most, false)] {
-            let (sin, cos) = bound.sin_cos();
-            // cos δ · sin(H − bound), which also vanishes half a turn away.
-            let offset = Chebyshev::<NODES>::fit(0.0, 1.0, |fraction| {
-                let local = path.local(arc, fraction);
-                -local[1] * cos - (local[2] * arc.latitude.cos - local[0] * arc.latitude.sin) * sin
-            });
-            for crossing in offset.crossings().iter() {
-                let there = hour_angle(path.local(arc, crossing.at), arc.latitude) - bound;
-                if there.cos() > 0.0 {
-                    changes.push((crossing.at, crossing.rising == opens));
+    /// The sine of the topocentric altitude that bounds a target; None where nothing does.
+    pub(super) fn sin_threshold(&self, cause: Cause, row: usize) -> Option<f64> {
+        let refraction = self.days.observer().refraction;
+        let observed = match cause {
+            Cause::AltitudeMin if self.lower.0.is_some() => return self.lower.0,
+            Cause::AirmassMax if self.by_airmass.0.is_some() => return self.by_airmass.0,
+            Cause::AltitudeMin => self.limits.altitude_min.as_ref()?.at(row),
+            Cause::AltitudeMax => {
+                let observed = self.limits.altitude_max.as_ref()?.at(row);
+                if observed >= FRAC_PI_2 {
+                    return None;
+                }
+                match self.upper.0 {
+                    Some(sine) => return Some(sine),
+                    None => observed,
+                }
+            }
+            _ => {
+                let airmass = self.limits.airmass_max.as_ref()?.at(row);
+                // A bad value is the row's own affair: Limits::status marked it.
+                self.limits.airmass_model.observed_altitude(airmass, refraction).unwrap_or(f64::NAN)
+            }
+        };
+        Some(refraction.topocentric_altitude(observed).sin())
+    }
+
+    fn keepout<P: DayPath>(&self, cause: Cause, index: usize, path: &P, row: usize, set: &mut IntervalSet) {
+        use super::limits::Least;
+        let (arc, day, limits) = (&self.days.arcs[index], &self.limited[index], self.limits);
+        let Some(nodes) = &day.nodes else { return };
+        let reason = cause as u8;
+        match cause {
+            Cause::SunSeparationMin => {
+                if let (Some(sun), Some(column)) = (&day.sun, &limits.sun_separation_min) {
+                    sun.fill(arc, nodes, path, Least::Fixed(column.at(row)), day.range, reason, set);
+                }
+                return;
+            }
+            Cause::MoonSeparationMin => {
+                if let (Some(moon), Some(column)) = (&day.moon, &limits.moon_separation_min) {
+                    moon.fill(arc, nodes, path, Least::Fixed(column.at(row)), day.range, reason, set);
+                }
+            }
+            _ => {
+                if let (Some(moon), Some(phase), Some(avoidance)) =
+                    (&day.moon, &day.moon_phase, &limits.moon_avoidance)
+                {
+                    phase.fill(moon, avoidance, row, arc, nodes, path, day.range, reason, set);
                 }
             }
         }
-        changes.sort_by(|a, b| a.0.total_cmp(&b.0));
-        let at_start = hour_angle(path.local(arc, 0.0), arc.latitude);
-        let inside = (least..most).contains(&at_start);
-        set.fill_from_changes(range, inside, changes.iter().copied(), Cause::HourAngle as u8);
-        left.intersect(set, scratch);
-        note(stages, Cause::HourAngle, !left.is_empty());
+        if let Some(down) = &day.moon_down {
+            *set = set.union(&down[usize::from(cause == Cause::MoonAvoidance)]);
+        }
     }
 
-    fn keepout<P: DayPath>(&self, index: usize, path: &P, row: usize, workspace: &mut Workspace) {
-        let (arc, day) = (&self.days.arcs[index], &self.limited[index]);
-        let Workspace { left, set, scratch, stages, .. } = workspace;
-        let keepouts = [
-            (&day.sun, &self.limits.sun_separation_min, Cause::SunSeparationMin),
-            (&day.moon, &self.limits.moon_separation_min, Cause::MoonSeparationMin),
-        ];
-        for (keepout, column, cause) in keepouts {
-            let (Some(keepout), Some(column), Some(nodes)) = (keepout, column, &day.nodes) else { continue };
-            if left.is_empty() {
-                return;
-            }
-            keepout.fill(arc, nodes, path, column.at(row), day.range, cause as u8, set);
-            left.intersect(set, scratch);
-            note(stages, cause, !left.is_empty());
-        }
+    fn cables<P: Turning>(
+        &self,
+        index: usize,
+        path: &P,
+        left: &IntervalSet,
+        set: &mut IntervalSet,
+        workspace: &mut Workspace,
+    ) {
+        let Some(range) = self.limits.cable_range else { return };
+        let arc = &self.days.arcs[index];
+        let goes_on = workspace.branch.take().filter(|_| left.first().is_some_and(|i| i.start_reason == DAY));
+        let reason = Cause::CableRange as u8;
+        workspace.branch = split_by_cables(arc, path, range, goes_on, reason, &mut workspace.walk, left, set);
     }
 
     /// Turns what is left of the day into pieces, each with the instant at which the target is highest.
-    fn pieces<P: DayPath>(&self, index: usize, path: &P, workspace: &mut Workspace) {
+    fn pieces<P: DayPath>(
+        &self,
+        index: usize,
+        path: &P,
+        row: usize,
+        left: &IntervalSet,
+        workspace: &mut Workspace,
+    ) {
         let arc = &self.days.arcs[index];
-        let Workspace { left, highest, pieces, .. } = workspace;
-        if left.is_empty() {
-            return;
-        }
+        let Workspace { highest, pieces, .. } = workspace;
         for interval in left.iter() {
             highest.clear();
             path.highest(arc, interval.start, interval.stop, highest);
-            let inside = highest.iter().copied();
             let mut best = (interval.start, f64::NEG_INFINITY);
-            for at in [interval.start, interval.stop].into_iter().chain(inside) {
+            for at in [interval.start, interval.stop].into_iter().chain(highest.iter().copied()) {
                 let sin_altitude = path.local(arc, at)[2];
                 if sin_altitude > best.1 {
                     best = (at, sin_altitude);
@@ -285,14 +486,15 @@ impl<'a> LimitedSpan<'a> {
                 stop_reason: interval.stop_reason,
                 best: (index, best.0),
                 best_sin_altitude: best.1,
+                start_sure: sure::edge(self, interval.start_reason, index, path, row, interval.start),
+                stop_sure: sure::edge(self, interval.stop_reason, index, path, row, interval.stop),
             };
             match pieces.last_mut() {
                 // Where one day ends the next begins: the edge between them is none.
-                Some(last)
-                    if last.stop_reason == DAY && piece.start_reason == DAY && last.last.0 + 1 == index =>
-                {
+                Some(last) if goes_on(last, &piece, index) => {
                     last.last = piece.last;
                     last.stop_reason = piece.stop_reason;
+                    last.stop_sure = piece.stop_sure;
                     if piece.best_sin_altitude > last.best_sin_altitude {
                         last.best = piece.best;
                         last.best_sin_altitude = piece.best_sin_altitude;
@@ -307,36 +509,65 @@ impl<'a> LimitedSpan<'a> {
     fn join(&self, row: usize, workspace: &mut Workspace, windows: &mut Vec<Window>) -> bool {
         let shortest_s = self.limits.window_min_s.as_ref().map_or(0.0, |column| column.at(row));
         let utc = |at: (usize, f64)| self.days.utc(&self.days.arcs[at.0], at.1);
-        let cause = |reason: u8| Cause::from_code(reason).unwrap_or(Cause::None);
+        let Workspace { pieces, lost, stages, .. } = workspace;
+        let lost_at = |day: Option<usize>, end: usize| {
+            day.and_then(|day| lost.get(day)).map_or(Cause::None, |lost| lost[end])
+        };
         let before = windows.len();
-        for piece in &workspace.pieces {
+        for piece in pieces.iter() {
             let instant = |at: (usize, f64)| self.days.arcs[at.0].instant(at.1);
-            let length_s = instant(piece.last).seconds_since(instant(piece.first));
             let (start, stop) = (utc(piece.first), utc(piece.last));
-            if length_s < shortest_s || stop.nanoseconds() <= start.nanoseconds() {
+            if stop.nanoseconds() <= start.nanoseconds()
+                || (shortest_s > 0.0 && instant(piece.last).seconds_since(instant(piece.first)) < shortest_s)
+            {
                 continue;
             }
+            // A limit that opens or closes at midnight itself was passed on the other day.
+            let start_reason = match piece.start_reason {
+                DAY => lost_at(piece.first.0.checked_sub(1), 1),
+                code => Cause::from_code(code).unwrap_or(Cause::None),
+            };
+            let stop_reason = match piece.stop_reason {
+                DAY => lost_at(piece.last.0.checked_add(1), 0),
+                code => Cause::from_code(code).unwrap_or(Cause::None),
+            };
             windows.push(Window {
                 start,
                 stop,
-                start_reason: cause(piece.start_reason),
-                stop_reason: cause(piece.stop_reason),
+                start_reason,
+                stop_reason,
                 best_airmass: self.airmass(piece.best_sin_altitude),
                 best_time: utc(piece.best),
+                start_error_s: piece.start_sure.computed_error_s,
+                stop_error_s: piece.stop_sure.computed_error_s,
+                start_scatter_s: piece.start_sure.horizon_scatter_s,
+                stop_scatter_s: piece.stop_sure.horizon_scatter_s,
+                may_not_happen: piece.start_sure.may_not_happen || piece.stop_sure.may_not_happen,
             });
         }
         let found = windows.len() > before;
-        if self.limits.window_min_s.is_some() && !workspace.pieces.is_empty() {
-            note(&mut workspace.stages, Cause::WindowMin, found);
+        if !pieces.is_empty() && !found {
+            note(stages, Cause::WindowMin, false);
         }
         found
     }
 
     fn airmass(&self, sin_altitude: f64) -> f64 {
-        let topocentric = altitude([(1.0 - sin_altitude * sin_altitude).max(0.0).sqrt(), 0.0, sin_altitude]);
+        let across: Vector = [(1.0 - sin_altitude * sin_altitude).max(0.0).sqrt(), 0.0, sin_altitude];
+        let topocentric = altitude(across);
         let observed = self.days.observer().refraction.observed_altitude(topocentric);
         self.limits.airmass_model.airmass(observed, topocentric)
     }
+}
+
+/// Whether a piece of day `index` goes on where the last one ended. Where rounding has put the crossing of
+/// a limit on one side of midnight for one day and on the other for the next, what is between is none.
+fn goes_on(last: &Piece, piece: &Piece, index: usize) -> bool {
+    const ROUNDING: f64 = 1e-9;
+    let ends = last.stop_reason == DAY || last.last.1 >= 1.0 - ROUNDING;
+    let begins = piece.start_reason == DAY || piece.first.1 <= ROUNDING;
+    let joint = last.stop_reason == DAY || piece.start_reason == DAY;
+    last.last.0 + 1 == index && ends && begins && joint
 }
 
 /// Notes that after a limit something was left, on this day or an earlier one.
@@ -349,18 +580,6 @@ fn note(stages: &mut Vec<(Cause, bool)>, cause: Cause, left: bool) {
 
 /// The first limit after which nothing was left on any day.
 fn first_empty(stages: &[(Cause, bool)]) -> Cause {
-    let order = [
-        Cause::SunAltitudeMax,
-        Cause::MoonAltitudeMax,
-        Cause::MoonIlluminationMax,
-        Cause::AltitudeMin,
-        Cause::AirmassMax,
-        Cause::AltitudeMax,
-        Cause::HourAngle,
-        Cause::SunSeparationMin,
-        Cause::MoonSeparationMin,
-        Cause::WindowMin,
-    ];
     let empty = |cause: &Cause| stages.iter().any(|stage| stage.0 == *cause && !stage.1);
-    order.into_iter().find(empty).unwrap_or(Cause::Span)
+    Cause::ORDER.into_iter().find(empty).unwrap_or(Cause::Span)
 }

@@ -10,7 +10,7 @@ use crate::events::{Days, night_bounds};
 use crate::math::chebyshev::{ChebyshevVector, node};
 use crate::math::vector::{Vector, angle, dot, product, rotate, rotation_3, scale, sub};
 use crate::time::{Instant, Tai, Utc};
-use crate::windows::{LimitedSpan, Limits, Workspace};
+use crate::windows::{Column, LimitedSpan, Limits, Workspace};
 
 /// Coefficients of a body's series over the dark: the Moon's parallax over a whole day of polar night
 /// is held to 2 mas, over an ordinary night to a thousandth of that.
@@ -49,17 +49,20 @@ pub(super) struct Mover {
     pub reach: f64,
 }
 
-/// The limits that are on the sky alone: the same limits without those on the target's place and the
-/// window's length.
-pub(super) fn sky_limits(limits: &Limits) -> Limits {
+/// The limits that are on the sky alone; of one that differs from target to target, the loosest.
+fn sky_limits(limits: &Limits) -> Limits {
+    let loosest = |column: &Option<Column>| match column {
+        Some(Column::Each(values)) => {
+            Some(Column::All(values.iter().copied().fold(f64::NEG_INFINITY, f64::max)))
+        }
+        shared => shared.clone(),
+    };
     Limits {
-        altitude_min: None,
-        altitude_max: None,
-        airmass_max: None,
-        sun_separation_min: None,
-        moon_separation_min: None,
-        window_min_s: None,
-        ..limits.clone()
+        sun_altitude_max: loosest(&limits.sun_altitude_max),
+        moon_altitude_max: loosest(&limits.moon_altitude_max),
+        moon_illumination_max: loosest(&limits.moon_illumination_max),
+        allowed_intervals: limits.allowed_intervals.clone(),
+        ..Limits::none(limits.airmass_model)
     }
 }
 

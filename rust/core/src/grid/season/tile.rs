@@ -95,21 +95,43 @@ fn is_known(limits: &Limits) -> bool {
         altitude_max: _,
         airmass_max: _,
         airmass_model: _,
+        use_skyline,
         sun_altitude_max,
         sun_separation_min: _,
         moon_separation_min: _,
+        moon_avoidance,
+        moon_down_relaxes,
         moon_altitude_max,
         moon_illumination_max,
+        sky_brightness_min_v,
+        sky_model: _,
         hour_angle_min,
         hour_angle_max,
+        declination_min,
+        declination_max,
+        azimuth_sectors,
+        azimuth_rate_max,
+        cable_range,
+        allowed_intervals: _,
+        phase,
         window_min_s: _,
     } = limits;
     let shared = |column: &Option<Column>| !matches!(column, Some(Column::Each(_)));
     shared(sun_altitude_max)
         && shared(moon_altitude_max)
         && shared(moon_illumination_max)
+        && !use_skyline
+        && moon_avoidance.is_none()
+        && moon_down_relaxes.is_none()
+        && sky_brightness_min_v.is_none()
         && hour_angle_min.is_none()
         && hour_angle_max.is_none()
+        && declination_min.is_none()
+        && declination_max.is_none()
+        && azimuth_sectors.is_none()
+        && azimuth_rate_max.is_none()
+        && cable_range.is_none()
+        && phase.is_none()
 }
 
 impl<'a> Season<'a> {
@@ -144,7 +166,7 @@ impl<'a> Season<'a> {
             sin_lowest,
             sin_highest,
             known: is_known(limits),
-            per_target: limits.is_per_target(),
+            per_target: limits.has_columns(),
             keeps: [limits.moon_separation_min.is_some(), sun_keeps],
             isa,
         })
