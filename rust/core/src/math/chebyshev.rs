@@ -225,8 +225,10 @@ impl<const N: usize> Chebyshev<N> {
     pub fn crossings_between(&self, positive_at_start: bool, positive_at_stop: bool) -> Crossings<N> {
         let hull = self.bernstein();
         let mut found = self.crossings_of_unit(&hull);
-        // The sign before the first crossing; without one, the sign of all.
-        let own = found.first().map_or_else(|| hull.iter().any(|&b| b > 0.0), |c| !c.rising);
+        // The sign before the first crossing; without one, that of the end which stands farther from zero: the
+        // coefficients between the ends may well have the other sign.
+        let end = if hull[0].abs() >= hull[N - 1].abs() { hull[0] } else { hull[N - 1] };
+        let own = found.first().map_or(end > 0.0, |c| !c.rising);
         found.reconcile(own, positive_at_start, positive_at_stop);
         self.placed(found)
     }

@@ -292,3 +292,11 @@ fn tangents_and_nothing() {
     assert!(Chebyshev::new(0.0, 1.0, [2.0]).crossings().is_empty());
     assert_eq!(Chebyshev::new(0.0, 1.0, [0.0, 1.0]).first_crossing().unwrap().at, 0.5);
 }
+
+#[test]
+fn a_near_miss_stays_a_miss_between_known_signs() {
+    // Negative throughout, with positive coefficients in the Bernstein basis.
+    let series = Chebyshev::<9>::fit(0.0, 1.0, |x| -1e-6 - (x - 0.5).powi(2));
+    assert!(series.bernstein().iter().any(|&b| b > 0.0));
+    assert!(series.crossings_between(false, false).is_empty());
+}

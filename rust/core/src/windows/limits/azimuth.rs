@@ -19,6 +19,8 @@ const LONGEST: f64 = 0.25;
 /// A Newton step below this, in days, is the last: 0.9 µs.
 const LAST_STEP_D: f64 = 1e-11;
 
+/// A branch that lasts no longer than this, in days, is none: 86 µs.
+const SHORTEST: f64 = 1e-9;
 /// What is left of a turn when rounding has carried the azimuth back over its beginning.
 const ROUNDING: f64 = 1e-7;
 
@@ -217,6 +219,8 @@ pub fn split_by_cables<P: Turning>(
                     let lasting = (first..=last)
                         .map(|turns| turns as f64 * TURN)
                         .map(|offset| (offset, walk.leaves(arc, path, start, low - offset, high - offset)))
+                        // On a bound and on its way out: no branch to begin with.
+                        .filter(|branch| branch.1 > start + SHORTEST)
                         .max_by(|a, b| a.1.total_cmp(&b.1));
                     match lasting {
                         Some((offset, _)) => offset,
@@ -232,7 +236,7 @@ pub fn split_by_cables<P: Turning>(
             };
             let leaves = walk.leaves(arc, path, start, low - offset, high - offset);
             let ends = leaves >= interval.stop;
-            let stop = if ends { interval.stop } else { leaves.max(start + 1e-12) };
+            let stop = if ends { interval.stop } else { leaves.max(start + SHORTEST) };
             set.push_apart(Interval {
                 start,
                 stop,
@@ -267,10 +271,7 @@ impl AzimuthWalk {
             let swing = piece.way * (bound - piece.azimuth);
             if swing < piece.swing {
                 let at = if swing <= 0.0 { piece.from } else { piece.at_swing(arc, path, swing, piece.from) };
-                // On the bound and moving inwards is no leaving.
-                if at > start || swing < piece.way * (self.azimuth_at(arc, path, start) - piece.azimuth) {
-                    return at.max(start);
-                }
+                return at.max(start);
             }
         }
         f64::INFINITY
@@ -283,7 +284,7 @@ impl AzimuthWalk {
             let swing = (piece.way * (bound - piece.azimuth)).rem_euclid(TURN);
             if swing < piece.swing {
                 let at = piece.at_swing(arc, path, swing, piece.from);
-                if at > start {
+                if at > start + SHORTEST {
                     return Some(at);
                 }
             }

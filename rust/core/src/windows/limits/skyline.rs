@@ -139,7 +139,7 @@ fn along<P: Turning>(
         let start_azimuth = if start_azimuth >= TURN { 0.0 } else { start_azimuth };
         let mut index = lines.index(start_azimuth);
         // Going west from a point of the line, the line is that to the west of it.
-        if piece.way < 0.0 && start_azimuth - lines.lines[index].azimuth < 1e-12 {
+        if piece.way < 0.0 && (start_azimuth - lines.lines[index].azimuth).rem_euclid(TURN) < 1e-12 {
             index = (index + count - 1) % count;
         }
         let mut at = piece.from;
