@@ -153,7 +153,7 @@ fn case(random: &mut Random, kind: usize) -> Case {
     let site = Site::from_degrees(random.between(-180.0, 180.0), latitude_deg, 2000.0).unwrap();
     let air =
         Atmosphere { pressure_hpa: 790.0, temperature_c: 5.0, relative_humidity: 0.3, wavelength_um: 0.55 };
-    let refraction = if kind % 4 == 0 {
+    let refraction = if kind.is_multiple_of(4) {
         Refraction::none()
     } else {
         Refraction::new(&air, site.latitude(), 2000.0).unwrap()

@@ -266,7 +266,7 @@ fn holds(
     if let Some(phase) = &limits.phase {
         let direction = catalogue.unwrap();
         let (centre, (day, fraction)) = match phase.scale {
-            PhaseScale::BarycentricTdb => (second.sky.observer_au, second.sky.tdb.mjd_parts()),
+            PhaseScale::BarycentricTdb => (second.sky.observer_au, second.sky.tdb().mjd_parts()),
             PhaseScale::HeliocentricUtc => {
                 (sub(second.sky.observer_au, second.sky.sun_au), second.utc.mjd_parts())
             }
@@ -452,7 +452,7 @@ fn every_second_of_random_days_agrees() {
             let utc = start.plus_nanoseconds(step * 1_000_000_000 + 500_000_000);
             let sky = track.sky(&observer, tai_of(utc)).unwrap();
             let at = |body| body_direction(body, &setting.ephemeris, &sky).unwrap().direction;
-            let position = |body| setting.ephemeris.position(body, sky.tdb).unwrap();
+            let position = |body| setting.ephemeris.position(body, sky.tdb()).unwrap();
             let (earth, sun, moon) = (position(Body::Earth), position(Body::Sun), position(Body::Moon));
             let from_full = {
                 let minute = (step / 60) as usize;
@@ -508,7 +508,7 @@ fn direction_of(targets: &Targets<'_>, row: usize, setting: &Setting, sky: &Sky)
     match targets {
         Targets::Catalog(catalog) => {
             let star = catalog.star(row);
-            let years = (sky.tdb.mjd() - J2000_MJD) / DAYS_PER_JULIAN_YEAR - star.epoch_yr;
+            let years = (sky.tdb().mjd() - J2000_MJD) / DAYS_PER_JULIAN_YEAR - star.epoch_yr;
             (star_direction(&star, sky), Some(unit(add_scaled(star.position, years, star.motion))))
         }
         Targets::Bodies(bodies) => {
