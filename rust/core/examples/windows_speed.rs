@@ -8,15 +8,20 @@ use hourarc_core::earth::Orientation;
 use hourarc_core::ephemeris::Ephemeris;
 use hourarc_core::events::{Days, track_for};
 use hourarc_core::refraction::{AirmassModel, Atmosphere, Refraction};
-use hourarc_core::site::Site;
+use hourarc_core::site::{Site, Skyline};
 use hourarc_core::time::{LeapSeconds, Utc};
-use hourarc_core::windows::{Column, LimitedSpan, Limits, Workspace};
+use hourarc_core::windows::{Column, LimitedSpan, Limits, MoonAvoidance, Phase, PhaseScale, Workspace};
 use std::time::Instant;
 
 const STARS: usize = 100_000;
 
 fn main() {
-    let site = Site::from_degrees(-70.4, -24.6, 2600.0).unwrap();
+    let points: Vec<f64> = (0..72).map(|i| f64::from(i) * 5.0 * RADIANS_PER_DEGREE).collect();
+    let altitudes: Vec<f64> =
+        points.iter().map(|a| (10.0 + 8.0 * (7.0 * a).sin()) * RADIANS_PER_DEGREE).collect();
+    let site = Site::from_degrees(-70.4, -24.6, 2600.0)
+        .unwrap()
+        .with_skyline(Skyline::new(&points, &altitudes).unwrap());
     let atmosphere = Atmosphere {
         pressure_hpa: Atmosphere::standard_pressure_hpa(2600.0),
         temperature_c: 10.0,
@@ -46,6 +51,42 @@ fn main() {
     measure("+ Sun separation (the default limits)", &days, &targets, &limits);
     limits.moon_separation_min = deg(30.0);
     measure("+ Moon separation", &days, &targets, &limits);
+
+    println!("the default limits and one more:");
+    limits.moon_separation_min = None;
+    let one_more: [(&str, fn(&mut Limits)); 10] = [
+        ("hour angle", |l| {
+            l.hour_angle_min = Some(Column::All(-1.0));
+            l.hour_angle_max = Some(Column::All(1.0));
+        }),
+        ("declination", |l| l.declination_max = Some(Column::All(0.5))),
+        ("azimuth sector", |l| l.azimuth_sectors = Some(vec![(1.0, 5.0)])),
+        ("azimuth rate", |l| l.azimuth_rate_max = Some(Column::All(0.005))),
+        ("cables", |l| l.cable_range = Some((-4.7, 4.7))),
+        ("Lorentzian Moon avoidance", |l| {
+            let (separation, width_d) = (Column::All(2.0), Column::All(7.0));
+            l.moon_avoidance = Some(MoonAvoidance::Lorentzian { separation, width_d });
+        }),
+        ("sky brightness", |l| l.sky_brightness_min_v = Some(Column::All(20.5))),
+        ("phase", |l| {
+            l.phase = Some(Phase {
+                epoch_mjd: Column::All(60_000.0),
+                period_d: Column::All(0.7),
+                half_width_d: Column::All(0.02),
+                scale: PhaseScale::BarycentricTdb,
+            });
+        }),
+        ("skyline of 72 points below 30°", |l| l.use_skyline = true),
+        ("skyline of 72 points alone, no altitude", |l| {
+            l.use_skyline = true;
+            l.altitude_min = None;
+        }),
+    ];
+    for (name, add) in one_more {
+        let mut limits = limits.clone();
+        add(&mut limits);
+        measure(name, &days, &targets, &limits);
+    }
 }
 
 fn measure(name: &str, days: &Days<'_>, targets: &Targets<'_>, limits: &Limits) {
@@ -54,7 +95,7 @@ fn measure(name: &str, days: &Days<'_>, targets: &Targets<'_>, limits: &Limits) 
     let prepared = begun.elapsed().as_secs_f64();
     let mut best = f64::INFINITY;
     let mut count = 0;
-    for _ in 0..3 {
+    for _ in 0..7 {
         let (mut workspace, mut windows) = (Workspace::default(), Vec::with_capacity(4 * STARS));
         let begun = Instant::now();
         for row in 0..targets.len() {

@@ -25,7 +25,7 @@ use crate::error::Status;
 use crate::horizon::Latitude;
 use crate::math::chebyshev::{Chebyshev, ChebyshevVector, node};
 use crate::math::vector::{
-    Matrix, Vector, add, add_scaled, product, rotate, rotate_back, rotation_3, scale, sub,
+    Matrix, Vector, add, add_scaled, cross, dot, product, rotate, rotate_back, rotation_3, scale, sub,
 };
 use crate::time::{Instant, Tai, Tt, Utc};
 
@@ -297,6 +297,62 @@ impl Plane {
 /// The fraction of the day of Chebyshev node `j` of `N`.
 pub fn node_fraction<const N: usize>(j: usize) -> f64 {
     0.5 * (1.0 + node(j, N))
+}
+
+/// What decides, from its catalogue place alone, that a star stays below an altitude during part of a day.
+///
+/// The sine of the altitude is c + a cos ωτ + b sin ωτ about the middle of the part; its greatest value in
+/// −T to T needs no trigonometry. What the place leaves out (aberration, parallax, the change of
+/// precession in a day) is below [`SCREEN_MARGIN`].
+#[derive(Debug, Clone, Copy)]
+pub struct Screen {
+    /// Zenith at the middle, the point it moves towards, and the pole, each times what the site's latitude
+    /// makes of it, on the axes of the GCRS.
+    zenith: Vector,
+    onwards: Vector,
+    pole: Vector,
+    cos_half: f64,
+    sin_half: f64,
+    /// Julian years after J2000.0.
+    years: f64,
+}
+
+/// What a catalogue place carried to the day may be off by, with room to spare, radians.
+const SCREEN_MARGIN: f64 = 1e-3;
+
+impl Screen {
+    /// For the part of a day between two fractions.
+    pub fn new(arc: &Arc<'_>, from: f64, to: f64) -> Self {
+        let matrix = product(&arc.cirs_to_horizon(0.5 * (from + to)), &arc.centre[1].intermediate);
+        let intermediate = &arc.centre[1].intermediate;
+        let zenith = matrix[2];
+        let along = dot(zenith, intermediate[2]);
+        let pole = scale(along, intermediate[2]);
+        let half = 0.5 * (to - from) * EARTH_ROTATION_RAD_PER_S * SECONDS_PER_DAY;
+        let half = half.min(std::f64::consts::PI);
+        Screen {
+            zenith: sub(zenith, pole),
+            // The zenith moves eastwards about the pole.
+            onwards: cross(intermediate[2], zenith),
+            pole,
+            cos_half: half.cos(),
+            sin_half: half.sin(),
+            years: arc.centre[1].tdb_yr,
+        }
+    }
+
+    /// Whether the star surely stays below an altitude, given by its sine, in the part.
+    #[inline(always)]
+    pub fn stays_below(&self, star: &Star, sin_threshold: f64) -> bool {
+        let place = add_scaled(star.position, self.years - star.epoch_yr, star.motion);
+        let (a, b, c) = (dot(self.zenith, place), dot(self.onwards, place), dot(self.pole, place));
+        let swing = (a * a + b * b).sqrt();
+        // The culmination lies in the part when its distance from the middle, whose cosine is a / swing, does.
+        let peaks = a >= swing * self.cos_half;
+        let highest = c + if peaks { swing } else { a * self.cos_half + b.abs() * self.sin_half };
+        // NaN is not below.
+        highest < (sin_threshold - SCREEN_MARGIN) * dot(place, place).sqrt()
+    }
 }
 
 /// A star during one day.

@@ -25,6 +25,9 @@ const FLAT: f64 = 1e-4;
 /// Coefficients of a star's altitude over a day: J_k(π) is below 1e-16 from the 22nd.
 const NODES: usize = 25;
 
+/// How far a star may move in half a day: see [`DayPath::reach`].
+pub(crate) const STAR_REACH_RAD: f64 = 1e-4;
+
 /// A passage of the meridian.
 #[derive(Debug, Clone, Copy, PartialEq)]
 pub struct Culmination {
@@ -98,8 +101,12 @@ impl DayPath for StarArc {
         let above = |local: Vector| dot(plane.normal, local) >= sin_threshold;
         let above_at_start = above(StarArc::local_at_end(self, arc, false));
         let above_at_stop = above(StarArc::local_at_end(self, arc, true));
-        let motion = self.motion(arc, plane).filter(|motion| motion.swing > FLAT);
-        let grazed = match motion {
+        let motion = self.motion(arc, plane);
+        // Never or always above: nothing to solve, unless an end says otherwise, which it cannot.
+        if motion.is_some_and(|motion| motion.stays_off(sin_threshold)) && above_at_start == above_at_stop {
+            return above_at_start;
+        }
+        let grazed = match motion.filter(|motion| motion.swing > FLAT) {
             Some(motion) => {
                 let pieces = Pieces { path: self, arc, plane, motion, sin_threshold, within };
                 pieces.crossings(above_at_start, above_at_stop, crossings)
@@ -160,7 +167,7 @@ impl DayPath for StarArc {
 
     /// Aberration, precession and deflection move no star by as much as this.
     fn reach(&self) -> f64 {
-        1e-4
+        STAR_REACH_RAD
     }
 
     fn error_rad(&self) -> f64 {
@@ -199,6 +206,13 @@ impl StarArc {
     }
 }
 
+impl Motion {
+    /// Whether the star never passes a threshold, by a margin that covers what its circle leaves out.
+    fn stays_off(&self, sin_threshold: f64) -> bool {
+        (self.middle - sin_threshold).abs() > self.swing + CLEAR
+    }
+}
+
 /// A day divided by the culminations of a star above and below a plane.
 struct Pieces<'a> {
     path: &'a StarArc,
@@ -215,10 +229,6 @@ impl Pieces<'_> {
         let before = crossings.len();
         let Motion { highest, half_turn, rate, middle, swing } = self.motion;
         let over = [middle + swing - self.sin_threshold, middle - swing - self.sin_threshold];
-        // Never or always above: nothing to solve, unless an end says otherwise, which it cannot.
-        if (over[0] < -CLEAR || over[1] > CLEAR) && above_at_start == above_at_stop {
-            return false;
-        }
         let cos_hour_angle = ((self.sin_threshold - middle) / swing).clamp(-1.0, 1.0);
         let to_crossing = cos_hour_angle.acos() / rate;
         // Where the circle is crossed steeply the guess is good to minutes.

@@ -11,9 +11,10 @@ mod scatter;
 pub use almanac::{AlmanacRow, almanac, night_bounds};
 pub(crate) use almanac::{SYNODIC_MONTH_D, moon_elongation};
 pub use arc::{
-    Arc, BODY_ARC_ERROR_RAD, BODY_NODES, BodyArc, Plane, SEPARATION_NODES, STAR_ARC_ERROR_RAD, StarArc,
-    directions_at, node_fraction,
+    Arc, BODY_ARC_ERROR_RAD, BODY_NODES, BodyArc, Plane, SEPARATION_NODES, STAR_ARC_ERROR_RAD, Screen,
+    StarArc, directions_at, node_fraction,
 };
+pub(crate) use crossing::STAR_REACH_RAD;
 pub use crossing::{Crossing, Culmination, DayPath};
 pub use days::{Days, span_ends, track_for, track_plan, utc_text};
 pub use passages::{Event, EventKind, Passage, rise_transit_set, rise_transit_set_with};

@@ -2,7 +2,7 @@
 
 use super::intervals::{Interval, IntervalSet};
 use super::limits::kinds::fill_intervals;
-use super::limits::{Keepout, Limits, MoonLightDay, MoonPhaseDay, Nodes, PhaseDay};
+use super::limits::{Column, Keepout, Limits, MoonLightDay, MoonPhaseDay, Nodes, PhaseDay};
 use super::reason::Cause;
 use crate::ephemeris::Body;
 use crate::error::{Error, Result, Status};
@@ -145,7 +145,8 @@ impl LimitedDay {
             if from_sun || from_moon || by_moonlight { arc.skies::<BODY_NODES>()? } else { Vec::new() };
         if let (Some(nodes), true) = (&self.nodes, from_sun) {
             let path = BodyArc::new(arc, &skies, Body::Sun)?;
-            self.sun = Some(Keepout::new(arc, nodes, Body::Sun, path)?);
+            let least = limits.sun_separation_min.as_ref().and_then(Column::shared);
+            self.sun = Some(Keepout::new(arc, nodes, Body::Sun, path)?.prepared(least));
         }
         if let (Some(nodes), true) = (&self.nodes, from_moon) {
             let path = BodyArc::new(arc, &skies, Body::Moon)?;
@@ -159,7 +160,8 @@ impl LimitedDay {
                     down
                 })
             });
-            self.moon = Some(Keepout::new(arc, nodes, Body::Moon, path)?);
+            let least = limits.moon_separation_min.as_ref().and_then(Column::shared);
+            self.moon = Some(Keepout::new(arc, nodes, Body::Moon, path)?.prepared(least));
         }
         if limits.moon_avoidance.is_some() {
             self.moon_phase = Some(MoonPhaseDay::new(arc, illumination(arc)?)?);

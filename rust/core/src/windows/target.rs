@@ -11,7 +11,7 @@ use super::reason::Cause;
 use super::sure;
 use crate::astrometry::{Star, Targets};
 use crate::error::{Error, Result, Status};
-use crate::events::{Crossing, DayPath, Days, Passing, StarArc};
+use crate::events::{Crossing, DayPath, Days, Passing, Screen, StarArc};
 use crate::horizon::altitude;
 use crate::math::vector::Vector;
 use crate::time::Utc;
@@ -71,6 +71,9 @@ pub struct LimitedSpan<'a> {
     upper: Threshold,
     by_airmass: Threshold,
     pub(super) lines: Option<Lines>,
+    /// For each day, where an altitude that is one for all targets comes first of those asked target by
+    /// target: the limit, its sine, and what tells that a star stays below it.
+    screens: Vec<Option<(Cause, f64, Screen)>>,
     pub(super) position_error: Option<Column>,
     has_columns: bool,
 }
@@ -152,11 +155,24 @@ impl<'a> LimitedSpan<'a> {
             upper: shared(&limits.altitude_max),
             by_airmass,
             lines,
+            screens: Vec::new(),
             position_error: None,
             has_columns: limits.has_columns(),
         };
         span.needed = span.each.iter().copied().filter(|&cause| !span.is_needless(cause)).collect();
+        span.screens = (0..span.limited.len()).map(|index| span.screen(index)).collect();
         Ok(span)
+    }
+
+    fn screen(&self, index: usize) -> Option<(Cause, f64, Screen)> {
+        let (first, last) = (self.limited[index].shared.first()?, self.limited[index].shared.last()?);
+        let cause = *self.needed.first()?;
+        let sine = match cause {
+            Cause::AltitudeMin => self.lower.0?,
+            Cause::AirmassMax => self.by_airmass.0?,
+            _ => return None,
+        };
+        Some((cause, sine, Screen::new(&self.days.arcs[index], first.start, last.stop)))
     }
 
     /// Whether another limit, the same for all targets too, says as much and more.
@@ -236,6 +252,16 @@ impl<'a> LimitedSpan<'a> {
             }
             match (&star, targets) {
                 (Some(star), _) => {
+                    // A star that is low all the time costs none either.
+                    if let Some((cause, sine, screen)) = &self.screens[index]
+                        && screen.stays_below(star, *sine)
+                    {
+                        note(&mut workspace.stages, *cause, false);
+                        if let Some(lost) = workspace.lost.last_mut() {
+                            note_lost(lost, ends_of(&day.shared, day.range), [false; 2], *cause);
+                        }
+                        continue;
+                    }
                     let arc = &self.days.arcs[index];
                     let path = match &yesterday {
                         Some((before, path)) if before + 1 == index => path.on_the_next_day(arc, star),

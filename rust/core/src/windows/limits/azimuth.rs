@@ -6,7 +6,7 @@
 //! body, the crossings of a series. Between two turnings the azimuth takes each value once.
 
 use super::super::intervals::{Interval, IntervalSet};
-use crate::constants::{SECONDS_PER_DAY, TURN};
+use crate::constants::{EARTH_ROTATION_RAD_PER_S, SECONDS_PER_DAY, TURN};
 use crate::events::{Arc, Crossing, DayPath};
 use crate::horizon::azimuth;
 use crate::math::chebyshev::Chebyshev;
@@ -34,6 +34,8 @@ fn turning_rate(local: [f64; 3], rate: [f64; 3]) -> (f64, f64) {
 pub trait Turning: DayPath {
     /// Appends instants that divide the day into parts in which the azimuth moves one way.
     fn azimuth_turns(&self, arc: &Arc<'_>, within: (f64, f64), at: &mut Vec<f64>);
+    /// Whether the azimuth may somewhere be faster than so much a day; false only when it surely is not.
+    fn may_turn_faster(&self, arc: &Arc<'_>, most_per_day: f64) -> bool;
 }
 
 impl Turning for crate::events::StarArc {
@@ -44,6 +46,19 @@ impl Turning for crate::events::StarArc {
             self.plane_crossings(arc, arc.zenith(), sin_altitude, within, &mut crossings);
             at.extend(crossings.iter().map(|crossing| crossing.at));
         }
+    }
+
+    fn may_turn_faster(&self, arc: &Arc<'_>, most_per_day: f64) -> bool {
+        // Concave in the sine of the altitude: the least is at one of the culminations.
+        const TURN_PER_DAY: f64 = EARTH_ROTATION_RAD_PER_S * SECONDS_PER_DAY;
+        let (sin_latitude, sin_declination) = (arc.latitude.sin, self.sin_declination());
+        let swing = arc.latitude.cos.abs() * (1.0 - sin_declination * sin_declination).max(0.0).sqrt();
+        let spare = |sine: f64| {
+            most_per_day * (1.0 - sine * sine) - TURN_PER_DAY * (sin_latitude - sine * sin_declination).abs()
+        };
+        let middle = sin_latitude * sin_declination;
+        // The circle leaves out 2e-6 of each sine.
+        spare(middle + swing).min(spare(middle - swing)) < 1e-4 * (most_per_day + TURN_PER_DAY)
     }
 }
 
@@ -56,6 +71,11 @@ impl Turning for crate::events::BodyArc {
             });
             at.extend(series.crossings().iter().map(|crossing| crossing.at));
         }
+    }
+
+    /// No bound is known for a body, so none is used.
+    fn may_turn_faster(&self, _: &Arc<'_>, _: f64) -> bool {
+        true
     }
 }
 
@@ -142,7 +162,7 @@ impl AzimuthPiece {
 /// Around the zenith that leaves out the keyhole, whose radius is 15.04″ cos φ / v at v ″/s. For a star
 /// the bound is an interval of sin h, since v (1 − s²) − ω |sin φ − s sin δ| is concave in s: whether the day
 /// comes near it at all is seen at once. Where it does, the crossings of series over half days.
-pub fn fill_azimuth_rate<P: DayPath>(
+pub fn fill_azimuth_rate<P: Turning>(
     arc: &Arc<'_>,
     path: &P,
     most: f64,
@@ -158,6 +178,9 @@ pub fn fill_azimuth_rate<P: DayPath>(
     };
     set.clear();
     set.push(range);
+    if !path.may_turn_faster(arc, most_per_day) {
+        return;
+    }
     let mut scratch = IntervalSet::new();
     for way in [1.0, -1.0] {
         let ends = [0.0, 0.5, 1.0].map(|fraction| spare(fraction, way) >= 0.0);

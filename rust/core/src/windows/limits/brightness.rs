@@ -68,36 +68,46 @@ pub fn sky_brightness(model: &SkyModel, sin_altitude: f64, moon: Option<MoonLigh
         return f64::NAN;
     }
     let light = moon.filter(|moon| moon.sin_altitude >= 0.0);
-    magnitude(model, sin_altitude, light.map(|moon| (moon, moon.separation < NEAR_MOON)))
+    magnitude(brightness(model, sin_altitude, light.map(|moon| (moon, moon.separation < NEAR_MOON))))
 }
 
-/// The same for a caller who has decided whether the Moon is up and near: smooth in between.
-fn magnitude(model: &SkyModel, sin_altitude: f64, moon: Option<(MoonLight, bool)>) -> f64 {
-    let transmitted = |airmass: f64| 10f64.powf(-0.4 * model.extinction_v * airmass);
+/// Nanolamberts of a brightness in V magnitudes a square arcsecond, equation 1, and back.
+fn nanolamberts(v: f64) -> f64 {
+    34.08 * (20.7233 - 0.92104 * v).exp()
+}
+
+fn magnitude(nanolamberts: f64) -> f64 {
+    (20.7233 - (nanolamberts / 34.08).ln()) / 0.92104
+}
+
+/// Nanolamberts, for a caller who has decided whether the Moon is up and near: smooth in between.
+fn brightness(model: &SkyModel, sin_altitude: f64, moon: Option<(MoonLight, bool)>) -> f64 {
+    const LN_10: f64 = std::f64::consts::LN_10;
+    let power_of_ten = |exponent: f64| (LN_10 * exponent).exp();
+    let transmitted = |airmass: f64| power_of_ten(-0.4 * model.extinction_v * airmass);
     let x = airmass(sin_altitude);
-    // Equations 1 and 2, nanolamberts.
-    let dark_zenith = 34.08 * (20.7233 - 0.92104 * model.dark_zenith_v).exp();
-    let mut brightness = dark_zenith * transmitted(x - 1.0) * x;
-    if let Some((moon, near)) = moon {
-        let degrees = moon.phase_angle.abs() / RADIANS_PER_DEGREE;
-        // Equation 20: illuminance of the Moon outside the air.
-        let illuminance = 10f64.powf(-0.4 * (3.84 + 0.026 * degrees + 4e-9 * degrees.powi(4)));
-        let separation = moon.separation.max(MOON_RADIUS);
-        let separation_deg = separation / RADIANS_PER_DEGREE;
-        // Equations 16, 18 and 19, 21: scattered by molecules, and by aerosols.
-        let molecules = 10f64.powf(5.36) * (1.06 + separation.cos().powi(2));
-        let aerosols = if near {
-            6.2e7 / (separation_deg * separation_deg)
-        } else {
-            10f64.powf(6.15 - separation_deg / 40.0)
-        };
-        // Equation 15.
-        brightness += (molecules + aerosols)
-            * illuminance
-            * transmitted(airmass(moon.sin_altitude))
-            * (1.0 - transmitted(x));
-    }
-    (20.7233 - (brightness / 34.08).ln()) / 0.92104
+    let through = transmitted(x);
+    // Equation 2.
+    let dark = nanolamberts(model.dark_zenith_v) * through / transmitted(1.0) * x;
+    let Some((moon, near)) = moon else { return dark };
+    let degrees = moon.phase_angle.abs() / RADIANS_PER_DEGREE;
+    let separation = moon.separation.max(MOON_RADIUS);
+    let separation_deg = separation / RADIANS_PER_DEGREE;
+    let cosine = separation.cos();
+    // Equations 16, 18 and 19, 21: scattered by molecules, and by aerosols.
+    let molecules = 10f64.powf(5.36) * (1.06 + cosine * cosine);
+    let aerosols = if near {
+        6.2e7 / (separation_deg * separation_deg)
+    } else {
+        power_of_ten(6.15 - separation_deg / 40.0)
+    };
+    // Equation 20, illuminance of the Moon outside the air, and its extinction.
+    let magnitudes = 3.84
+        + 0.026 * degrees
+        + 4e-9 * (degrees * degrees) * (degrees * degrees)
+        + model.extinction_v * airmass(moon.sin_altitude);
+    // Equation 15.
+    dark + (molecules + aerosols) * power_of_ten(-0.4 * magnitudes) * (1.0 - through)
 }
 
 /// The Moon over one day, as it lights the sky.
@@ -119,14 +129,14 @@ impl MoonLightDay {
         MoonLightDay { moon, cos_phase_angle, horizon }
     }
 
-    /// The sky's brightness where the target stands; whether the Moon is up and near is decided by the caller.
+    /// The sky's brightness where the target stands, nanolamberts; whether the Moon is up and near is decided by the caller.
     fn at<P: DayPath>(&self, arc: &Arc<'_>, path: &P, model: &SkyModel, at: f64, moon: (bool, bool)) -> f64 {
         let local = path.local(arc, at);
         if !moon.0 {
-            return magnitude(model, local[2], None);
+            return brightness(model, local[2], None);
         }
         let light = self.light(local, at);
-        magnitude(model, local[2], Some((light, moon.1)))
+        brightness(model, local[2], Some((light, moon.1)))
     }
 
     fn light(&self, local: [f64; 3], at: f64) -> MoonLight {
@@ -166,10 +176,15 @@ pub fn fill_brightness<P: DayPath>(
     crossings.clear();
     path.plane_crossings(arc, arc.zenith(), 0.0, within, crossings);
     let mut cuts: Vec<f64> = crossings.iter().map(|c| c.at).chain(day.horizon.iter().copied()).collect();
+    let per_brightest = 1.0 / nanolamberts(least_v);
     let cos_near = NEAR_MOON.cos();
     let nearer = |at: f64| dot(path.local(arc, at), day.moon.local.value(at)) - cos_near;
     let (first, last) = (nearer(within.0), nearer(within.1));
-    changes_of(&nearer, within.0, within.1, first >= 0.0, last >= 0.0, 1e-12, 0, &mut |at, _| cuts.push(at));
+    // In a day the Moon moves by 16° among the stars, parallax included: from 30° away it does not come near.
+    if first.max(last) > (30.0 * RADIANS_PER_DEGREE).cos() - cos_near || path.reach() > 0.1 {
+        let (first, last) = (first >= 0.0, last >= 0.0);
+        changes_of(&nearer, within.0, within.1, first, last, 1e-12, 0, &mut |at, _| cuts.push(at));
+    }
     cuts.retain(|&at| at > within.0 && at < within.1);
     cuts.sort_by(f64::total_cmp);
     cuts.push(within.1);
@@ -196,7 +211,7 @@ pub fn fill_brightness<P: DayPath>(
             state(from, false, set);
         } else {
             let moon = (day.moon.local.value(middle)[2] >= 0.0, nearer(middle) >= 0.0);
-            let darker = |at: f64| day.at(arc, path, model, at, moon) - least_v;
+            let darker = |at: f64| 1.0 - day.at(arc, path, model, at, moon) * per_brightest;
             let (first, last) = (darker(from) >= 0.0, darker(to) >= 0.0);
             state(from, first, set);
             changes_of(&darker, from, to, first, last, 1e-7, 0, &mut |at, rising| state(at, rising, set));

@@ -7,7 +7,7 @@ use crate::constants::{DAYS_PER_JULIAN_YEAR, J2000_MJD, LIGHT_TIME_AU_S, SECONDS
 use crate::error::{Result, Status};
 use crate::events::{Arc, SEPARATION_NODES};
 use crate::math::chebyshev::ChebyshevVector;
-use crate::math::vector::{Matrix, Vector, add_scaled, dot, rotate_back, sub, unit};
+use crate::math::vector::{Matrix, Vector, add_scaled, rotate_back, sub, unit};
 use crate::time::{Instant, Tt, Utc};
 
 /// Makes `set` the part of a day in which UTC is in one of the intervals.
@@ -97,12 +97,6 @@ impl PhaseDay {
         rotate_back(&self.local_at_middle, local_at_middle)
     }
 
-    /// What the clock reads beyond the day's fraction, seconds.
-    fn offset_s(&self, fraction: f64, direction: Vector) -> f64 {
-        let [start, stop] = self.offset_s;
-        start + fraction * (stop - start) + dot(self.from_centre_s.value(fraction), direction)
-    }
-
     /// Makes `set` the part of the day within the half width of a recurrence.
     ///
     /// The clock runs 1e-4 faster or slower than the day's fraction: three steps give 1 µs and below.
@@ -118,13 +112,17 @@ impl PhaseDay {
         let (epoch, period) = (phase.epoch_mjd.at(row), phase.period_d.at(row));
         let half = phase.half_width_d.at(row);
         let since_epoch = self.day as f64 - epoch;
-        let clock =
-            |fraction: f64| since_epoch + fraction + self.offset_s(fraction, direction) / SECONDS_PER_DAY;
+        let light_s = self.from_centre_s.dot(direction);
+        // What the clock reads beyond the day's fraction, days.
+        let offset = |fraction: f64| {
+            let [start, stop] = self.offset_s;
+            (start + fraction * (stop - start) + light_s.value(fraction)) / SECONDS_PER_DAY
+        };
+        let clock = |fraction: f64| since_epoch + fraction + offset(fraction);
         let fraction_of = |wanted: f64| {
             let mut fraction = (wanted - since_epoch).clamp(-1.0, 2.0);
             for _ in 0..4 {
-                let offset = self.offset_s(fraction.clamp(0.0, 1.0), direction) / SECONDS_PER_DAY;
-                fraction = wanted - since_epoch - offset;
+                fraction = wanted - since_epoch - offset(fraction.clamp(0.0, 1.0));
             }
             fraction
         };

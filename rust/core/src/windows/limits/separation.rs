@@ -11,9 +11,9 @@ use crate::astrometry::Sky;
 use crate::constants::TURN;
 use crate::ephemeris::Body;
 use crate::error::Status;
-use crate::events::node_fraction;
 use crate::events::{
-    Arc, BodyArc, DayPath, SEPARATION_NODES, SYNODIC_MONTH_D, directions_at, moon_elongation,
+    Arc, BodyArc, DayPath, SEPARATION_NODES, STAR_REACH_RAD, SYNODIC_MONTH_D, directions_at, moon_elongation,
+    node_fraction,
 };
 use crate::math::chebyshev::Chebyshev;
 use crate::math::vector::{Matrix, Vector, angle, dot, rotate_back};
@@ -77,6 +77,30 @@ pub struct Keepout {
     local: Vec<Vector>,
     /// The farthest it strays from where it stands at the middle of the day, radians.
     reach: f64,
+    /// A distance that is the same for all targets, and the cosines beyond which it is settled for stars.
+    settled: Option<Settled>,
+}
+
+/// Cosines of the distance at the middle of the day by which a smallest distance is settled.
+#[derive(Debug, Clone, Copy)]
+struct Settled {
+    /// The smallest and largest distance asked for, and how far body and target may come closer.
+    asked: (f64, f64, f64),
+    /// Below this the target is far enough all day.
+    far: f64,
+    /// Above this it is too near all day.
+    near: f64,
+}
+
+impl Settled {
+    fn new(asked: (f64, f64, f64)) -> Self {
+        let (smallest, largest, reach) = asked;
+        Settled {
+            asked,
+            far: if largest + reach < PI { (largest + reach).cos() } else { f64::NEG_INFINITY },
+            near: if smallest > reach { (smallest - reach).cos() } else { f64::INFINITY },
+        }
+    }
 }
 
 impl Keepout {
@@ -86,7 +110,13 @@ impl Keepout {
         let farthest = (0..NODES).map(|j| angle(fixed(j), fixed(MIDDLE))).fold(0.0, f64::max);
         // The outermost nodes stand 0.2% of a day from its ends; precession, aberration and the
         // curve between nodes are far below a percent of the way.
-        Ok(Keepout { body: path, local, reach: 1.02 * farthest + 1e-4 })
+        Ok(Keepout { body: path, local, reach: 1.02 * farthest + 1e-4, settled: None })
+    }
+
+    /// Prepares for stars and a distance that is the same for all.
+    pub fn prepared(mut self, least: Option<f64>) -> Self {
+        self.settled = least.map(|least| Settled::new((least, least, self.reach + STAR_REACH_RAD)));
+        self
     }
 
     /// Makes `set` the part of `range` in which the target is at least so far away.
@@ -101,7 +131,6 @@ impl Keepout {
         set: &mut IntervalSet,
     ) {
         let middle = node_fraction::<NODES>(MIDDLE);
-        let reach = self.reach + path.reach();
         let (smallest, largest) = least.bounds();
         set.clear();
         // At no distance there is no limit, not even for the body itself.
@@ -110,11 +139,14 @@ impl Keepout {
             return;
         }
         let cos_middle = dot(path.local_by(arc, middle, &nodes.cirs_to_horizon[MIDDLE]), self.local[MIDDLE]);
-        if largest + reach < PI && cos_middle < (largest + reach).cos() {
+        let asked = (smallest, largest, self.reach + path.reach());
+        let settled = self.settled.filter(|settled| settled.asked == asked);
+        let settled = settled.unwrap_or_else(|| Settled::new(asked));
+        if cos_middle < settled.far {
             set.push(range);
             return;
         }
-        if smallest > reach && cos_middle > (smallest - reach).cos() {
+        if cos_middle > settled.near {
             return;
         }
         let mut j = 0;

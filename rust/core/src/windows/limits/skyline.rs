@@ -3,14 +3,14 @@
 //! Above its highest point the line cannot matter, below its lowest nothing is seen: two circles about
 //! the zenith leave the stretches in which it decides. In each the azimuth moves one way, so the vertical
 //! circles through the points of the line are passed one after the other, and between two of them there
-//! is one straight line. Along it the altitude's distance from the line is bounded by
-//! |dh/dt| ≤ ω cos φ; where that does not decide, its zeros are those of a Chebyshev series, cut until what it
+//! is one straight line. Bounds on the sine of the altitude decide most of them; where they do not,
+//! the zeros of the altitude's distance from the line are those of a Chebyshev series, cut until what it
 //! leaves out is below 1e-10 rad. Steps, however near each other, are ends of such parts and cannot be missed.
 
 use super::super::intervals::{Interval, IntervalSet};
 use super::azimuth::{AzimuthWalk, Turning};
 use super::brightness::changes_of;
-use crate::constants::TURN;
+use crate::constants::{EARTH_ROTATION_RAD_PER_S, SECONDS_PER_DAY, TURN};
 use crate::events::{Arc, Crossing};
 use crate::horizon::{altitude, azimuth};
 use crate::refraction::Refraction;
@@ -30,6 +30,9 @@ struct Line {
     width: f64,
     altitude: f64,
     slope: f64,
+    /// Sines of the topocentric altitudes of its lower and its higher end.
+    sin_low: f64,
+    sin_high: f64,
 }
 
 impl Line {
@@ -44,19 +47,28 @@ impl Line {
 impl Lines {
     pub fn new(skyline: &Skyline, refraction: &Refraction) -> Self {
         let starts = skyline.breakpoints();
+        let sin = |observed: f64| refraction.topocentric_altitude(observed).sin();
         let lines: Vec<Line> = starts
             .iter()
             .enumerate()
             .map(|(i, &start)| {
                 let next = starts[(i + 1) % starts.len()];
                 let width = if next > start { next - start } else { next - start + TURN };
-                Line { azimuth: start, width, altitude: skyline.altitude(start), slope: skyline.slope(start) }
+                let (altitude, slope) = (skyline.altitude(start), skyline.slope(start));
+                let end = altitude + slope * width;
+                Line {
+                    azimuth: start,
+                    width,
+                    altitude,
+                    slope,
+                    sin_low: sin(altitude.min(end)),
+                    sin_high: sin(altitude.max(end)),
+                }
             })
             .collect();
         let ends = lines.iter().flat_map(|line| [line.altitude, line.altitude + line.slope * line.width]);
         let (lowest, highest) =
             ends.fold((f64::INFINITY, f64::NEG_INFINITY), |(low, high), end| (low.min(end), high.max(end)));
-        let sin = |observed: f64| refraction.topocentric_altitude(observed).sin();
         Lines { lines, sin_lowest: sin(lowest - 1e-9), sin_highest: sin(highest + 1e-9) }
     }
 
@@ -174,19 +186,25 @@ fn on_line<P: Turning>(
     to: f64,
     state: &mut impl FnMut(f64, bool),
 ) {
-    let refraction = arc.observer.refraction;
-    let over = |fraction: f64| {
-        let local = path.local(arc, fraction);
-        refraction.observed_altitude(altitude(local)) - line.altitude(azimuth(local))
-    };
-    let (first, last) = (over(from), over(to));
-    state(from, first >= 0.0);
-    // The altitude moves by less than this in the part, the line by what its ends say.
-    let fastest = 1.01 * crate::constants::EARTH_ROTATION_RAD_PER_S * crate::constants::SECONDS_PER_DAY;
-    let line_moves = line.slope.abs() * line.width;
-    let moves = fastest * arc.latitude.cos * (to - from) + line_moves + 1e-6;
-    if first.abs() > moves && last.abs() > moves && (first > 0.0) == (last > 0.0) {
+    // The sine of the altitude bends by at most ω² cos φ: between two instants it strays from the straight line
+    // by an eighth of that times the square of the time (Moon and planets: a tenth more).
+    const BEND: f64 =
+        0.14 * (EARTH_ROTATION_RAD_PER_S * SECONDS_PER_DAY) * (EARTH_ROTATION_RAD_PER_S * SECONDS_PER_DAY);
+    let (first, last) = (path.local(arc, from), path.local(arc, to));
+    let stray = BEND * arc.latitude.cos.abs() * (to - from) * (to - from) + 1e-9;
+    if first[2].min(last[2]) - stray > line.sin_high {
+        state(from, true);
         return;
     }
-    changes_of(&over, from, to, first >= 0.0, last >= 0.0, 1e-10, 0, &mut |at, rising| state(at, rising));
+    if first[2].max(last[2]) + stray < line.sin_low {
+        state(from, false);
+        return;
+    }
+    let refraction = arc.observer.refraction;
+    let over_line =
+        |local: [f64; 3]| refraction.observed_altitude(altitude(local)) - line.altitude(azimuth(local));
+    let over = |fraction: f64| over_line(path.local(arc, fraction));
+    let (first, last) = (over_line(first) >= 0.0, over_line(last) >= 0.0);
+    state(from, first);
+    changes_of(&over, from, to, first, last, 1e-10, 0, &mut |at, rising| state(at, rising));
 }
