@@ -337,7 +337,7 @@ impl Screen {
             pole,
             cos_half: half.cos(),
             sin_half: half.sin(),
-            years: arc.centre[1].tdb_yr,
+            years: arc.centre[1].epoch_yr,
         }
     }
 
