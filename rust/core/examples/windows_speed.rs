@@ -15,6 +15,9 @@ use std::time::Instant;
 
 const STARS: usize = 100_000;
 
+/// A name and what it adds to the limits.
+type OneMore = (&'static str, fn(&mut Limits));
+
 fn main() {
     let points: Vec<f64> = (0..72).map(|i| f64::from(i) * 5.0 * RADIANS_PER_DEGREE).collect();
     let altitudes: Vec<f64> =
@@ -54,7 +57,7 @@ fn main() {
 
     println!("the default limits and one more:");
     limits.moon_separation_min = None;
-    let one_more: [(&str, fn(&mut Limits)); 10] = [
+    let one_more: [OneMore; 10] = [
         ("hour angle", |l| {
             l.hour_angle_min = Some(Column::All(-1.0));
             l.hour_angle_max = Some(Column::All(1.0));

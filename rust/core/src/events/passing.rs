@@ -84,7 +84,8 @@ mod tests {
                 let moved: Vec<f64> = [margin - error, margin + error]
                     .into_iter()
                     .filter(|&margin| margin >= 0.0)
-                    .map(|moved| (at(moved) - at(margin)).abs() * SECONDS_PER_DAY)
+                    // The difference of the two roots, without loss.
+                    .map(|moved| 2.0 * error / c / (at(moved) + at(margin)) * SECONDS_PER_DAY)
                     .collect();
                 for moved in moved {
                     // The difference of the two instants is rounded to 1e-18 d.

@@ -8,6 +8,7 @@ mod day;
 mod explain;
 pub mod intervals;
 mod limits;
+mod pieces;
 mod reason;
 mod slots;
 mod sure;
