@@ -268,6 +268,12 @@ fn signs_that_agree_change_nothing() {
     assert_eq!(*wave.crossings_between(true, (9.3_f64).sin() > 0.0), *wave.crossings());
     let constant = Chebyshev::new(0.0, 1.0, [1.0, 0.0, 0.0]);
     assert!(constant.crossings_between(true, true).is_empty());
+    // Of one sign throughout, though its Bernstein coefficients are not: the Sun of a polar night.
+    for sign in [1.0, -1.0] {
+        let polar = Chebyshev::<24>::fit(0.0, 1.0, |t| sign * (0.3 + 0.29 * (6.3 * t).cos()));
+        assert!(polar.bernstein().iter().any(|&b| b * sign < 0.0));
+        assert!(polar.crossings_between(sign > 0.0, sign > 0.0).is_empty());
+    }
     // A sign that is plainly contradicted still alternates.
     let forced = constant.crossings_between(false, false);
     assert_eq!(forced.len(), 2);
