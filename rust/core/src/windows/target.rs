@@ -205,7 +205,7 @@ impl<'a> LimitedSpan<'a> {
     /// Appends the windows of target `row`, in order of time.
     ///
     /// Edges agree with the exact chain as the events do: 1 ms for stars, 20 ms where the Sun or the
-    /// Moon sets them (`tests/test_accuracy_windows.py`; every limit by brute force in `tests/windows.rs`).
+    /// Moon sets them (`tests/test_accuracy_windows.py`; every limit by brute force in `rust/core/tests/windows`).
     pub fn windows(
         &self,
         targets: &Targets<'_>,
