@@ -246,7 +246,9 @@ def test_windows_say_what_opens_closes_and_blocks():
     assert found.blocked_counts == {"airmass_max": 1, "bad_row": 1}
     assert found.hours[0] == pytest.approx((window.stop - window.start) / np.timedelta64(1, "h"))
     assert found.hours[1:].tolist() == [0.0, 0.0]
-    assert repr(found) == "<Windows: 1 of 1 among 3 targets>"
+    assert repr(found) == "<Windows: 1, of 1 of 3 targets>"
+    assert np.array_equal(found.duration_s, [window.duration_s for each in found for window in each])
+    assert found.duration_s.shape == (1,) and found.hours.sum() == found.duration_s.sum() / 3600.0
     # At the edge that the airmass closes, the airmass is the limit.
     assert ha.place(SITE, targets[:1], found.stop[:1]).airmass[0, 0] == pytest.approx(1.8, abs=1e-6)
 
@@ -273,6 +275,7 @@ def test_almanac_rows():
     assert np.all((almanac.moon_illuminated_fraction >= 0.0) & (almanac.moon_illuminated_fraction <= 1.0))
     assert np.all(almanac.dark_hours_moonless <= almanac.dark_hours)
     assert repr(almanac) == "<Almanac of 30 nights, 2026-03-01 to 2026-03-30>"
+    assert repr(ha.almanac(SITE, "2026-03-01")) == "<Almanac of the night 2026-03-01>"
     one = ha.almanac(SITE, np.datetime64("2026-03-10"))
     assert len(one) == 1 and one.sunset[0] == almanac.sunset[9]
     # Polar night and midnight sun: no sunset, NaT and not a made-up time.

@@ -81,8 +81,9 @@ class Almanac(ColumnResult):
         return columns
 
     def _heading(self) -> str:
-        reach = f", {self.night[0]} to {self.night[-1]}" if len(self) else ""
-        return f"Almanac of {len(self):,} nights{reach}"
+        if len(self) == 1:
+            return f"Almanac of the night {self.night[0]}"
+        return f"Almanac of {len(self):,} nights, {self.night[0]} to {self.night[-1]}"
 
 
 def almanac(
@@ -90,8 +91,15 @@ def almanac(
 ) -> Almanac:
     """Sunset to sunrise, twilights, Moon and dark hours, one row a night.
 
-    ``first_night``: date of the first evening, as an ISO date, a datetime.date or datetime64[D].
-    ``nights``: how many, 1 to 100,000.
+    * ``first_night``: date of the first evening, as an ISO date, a datetime.date or datetime64[D].
+    * ``nights``: how many, 1 to 100,000.
+    * ``orientation``: the Earth's orientation; None is `Orientation.packaged()`.
+
+    Sunset and sunrise, moonrise and moonset are those of the almanacs (34′ of refraction at sea level and the
+    limb), twilights those of the Sun's centre without refraction. Instants are within 20 ms of brute force on
+    DE440 with the same definitions (`tests/test_accuracy_almanac.py`).
+
+    Nights before 1960, when UTC begins, or past 2100, where the ephemeris ends, raise `HourarcError`.
     """
     here = as_site(site)
     first = day_number(first_night, "almanac: first_night")

@@ -179,7 +179,10 @@ def table(columns: Mapping[str, Any]) -> QTable:
         elif values.dtype.kind == "M":
             missing = np.isnat(values)
             filled = np.where(missing, np.datetime64("2000-01-01", "ns"), values.astype("datetime64[ns]"))
+            day = np.datetime_data(values.dtype)[0] == "D"
             time = Time(filled, format="datetime64", scale="utc")
+            if day:  # a date, not an instant
+                time.format, time.out_subfmt = "iso", "date"
             if np.any(missing):
                 time[missing] = np.ma.masked
             made[name] = time

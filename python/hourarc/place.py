@@ -148,14 +148,27 @@ def place(
     orientation: Orientation | None = None,
     threads: int | None = None,
 ) -> Places:
-    """Where each target stands at each instant.
+    """Where each target stands at each instant: shape (times, targets), or (targets,) for a scalar `when`.
 
     * ``when``: UTC: datetime64, ISO strings, datetimes or an astropy Time; a scalar, or one dimension.
     * ``columns``: which to compute, of `PLACE_COLUMNS`; None is the first six of them.
     * ``pairwise``: row i is target i at instant i, of which there are equally many.
     * ``out``: a former `Places`, or writable float64 arrays by column name (and ``status``, uint8), of
       the result's shape and C-contiguous: they are filled and no others are made.
+    * ``orientation``: the Earth's orientation; None is `Orientation.packaged()`.
     * ``threads``: None for all cores. The answer is the same, bit for bit, for any number.
+
+    Altitude and azimuth are observed: through the air of the site, unless its pressure is 0. Hour angle
+    and declination are topocentric, of the CIRS of date, without the air.
+
+    Topocentric places of stars are within 2 µas of pyerfa fed with the Earth of DE440
+    (`tests/test_accuracy_place.py`), those of Sun and Moon within 1 mas and of the planets within 5 mas of
+    DE440 (`tests/test_accuracy_bodies.py`). Refraction is within 0.1″ of the published ray trace down to an
+    altitude of 10° and within 0.1′ at the horizon (`tests/test_accuracy_refraction.py`); the real air
+    scatters far more there.
+
+    A target or an instant that cannot be computed (NaN, NaT, before 1960, outside 1900 to 2100) has NaN and a
+    ``status`` of 16 or more; the others are untouched. A wrong call raises `HourarcError`.
     """
     here, rows = as_site(site), as_targets(targets)
     nanoseconds, time_shape = to_nanoseconds(when, "when")

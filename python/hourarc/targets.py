@@ -143,6 +143,10 @@ class Catalog:
 class Bodies:
     """The Sun, the Moon and the planets, by lower-case name, on the built-in compact ephemeris (1900–2100).
 
+    The ephemeris is within 1 mas of DE440 for Sun and Moon and 5 mas for the planets
+    (`tests/test_accuracy_bodies.py`). Places are of the centre, with light time. Raises `UnknownName` for a
+    name that is not known, and says the nearest.
+
     >>> Bodies(["sun", "moon", "mars"])
     """
 
