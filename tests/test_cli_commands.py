@@ -191,6 +191,22 @@ def test_nights_that_cannot_be(
     assert said in capsys.readouterr().err
 
 
+def test_a_night_past_the_table_of_orientation_says_so(
+    plan: Path, targets: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    said = "The rotation of the Earth is extrapolated past its table"
+    assert night(plan, targets) == 0 and said not in capsys.readouterr().out
+    assert night(plan, targets, date="2080-03-10") == 0 and said in capsys.readouterr().out
+    assert run(["sky", str(plan), str(targets), "--at", "2080-03-10T20:00"]) == 0
+    assert said in capsys.readouterr().out
+
+
+def test_a_moon_that_does_not_set(plan: Path, targets: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    # The Moon sets at 10:21 on the tenth, just before local mean noon, and next at 11:14 on the eleventh.
+    assert night(plan, targets) == 0
+    assert "Moon          rises 03-10 21:13, does not set; " in capsys.readouterr().out
+
+
 def test_wrong_calls(plan: Path, targets: Path, capsys: pytest.CaptureFixture[str]) -> None:
     def said(code: int, *arguments: object) -> str:
         assert run([str(a) for a in arguments]) == code
@@ -321,6 +337,7 @@ def test_almanac(plan: Path, capsys: pytest.CaptureFixture[str]) -> None:
     printed = capsys.readouterr().out
     assert "UTC" in printed and "Saltpan Ridge" in printed
     lines = [line for line in printed.splitlines() if line.startswith("2026-")]
+    assert "-0.00" not in printed and "0.00" in lines[2], "around the full Moon no hour is without it"
     assert [line[:10] for line in lines] == [f"2026-03-{d:02d}" for d in range(1, 31)]
     assert len({len(line) for line in lines}) == 1, "columns are aligned"
     table = pq.read_table(output)

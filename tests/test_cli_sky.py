@@ -184,6 +184,20 @@ def test_every_form_of_an_instant_is_the_same_instant(plan: Path) -> None:
         assert np.abs(late.astype(np.int64)).max() <= error_ns, name
 
 
+@pytest.mark.parametrize("suffix", ["ecsv", "fits"])
+def test_instants_of_a_stated_scale_become_utc(plan: Path, suffix: str) -> None:
+    from astropy.table import Table
+    from astropy.time import Time
+
+    ra, dec, time = exposures(20)
+    source, output = plan.parent / f"exposures.{suffix}", plan.parent / "out.parquet"
+    Table({"ra": ra, "dec": dec, "time": Time(time, scale="utc").tt}).write(source)
+    assert run(["annotate", str(plan), str(source), "-q", "-o", str(output)]) == 0
+    late = pq.read_table(output)["time"].to_numpy() - time
+    # Astropy writes an ECSV to the millisecond.
+    assert np.abs(late.astype(np.int64)).max() <= (1_000_000 if suffix == "ecsv" else 1)
+
+
 def test_bad_rows_are_listed_and_the_others_annotated(plan: Path, capsys: pytest.CaptureFixture[str]) -> None:
     source, output = plan.parent / "exposures.csv", plan.parent / "out.csv"
     cells = [

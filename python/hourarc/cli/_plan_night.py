@@ -81,7 +81,9 @@ def plan_night(
     )
     written = _lists.write_list(output, windows, {"blocked": without}, targets, record)
     if not quiet:
-        _lists.tell(night_report(site, night, almanac, windows, without, targets), output, written)
+        earth = hourarc.Orientation.packaged().at(stop)
+        report = night_report(site, night, almanac, windows, without, targets, earth)
+        _lists.tell(report, output, written)
     return _lists.tell_rejected(targets, written)
 
 

@@ -66,5 +66,6 @@ def command(
     )
     written = _lists.write_list(output, table, {}, rows, record)
     if not quiet:
-        _lists.tell(sky_report(site, at, lights, table, rows), output, written)
+        earth = hourarc.Orientation.packaged().at(at)
+        _lists.tell(sky_report(site, at, lights, table, rows, earth), output, written)
     return _lists.tell_rejected(rows, written)

@@ -226,6 +226,8 @@ class _Astropy:
 
         self.path = path
         options: dict[str, Any] = {"format": {"ecsv": "ascii.ecsv"}.get(layout, layout)}
+        if layout == "fits":
+            options["astropy_native"] = True  # instants of a stated scale come as such
         if table is not None:
             options["hdu" if layout == "fits" else "table_id"] = table
         try:

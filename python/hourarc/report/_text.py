@@ -69,6 +69,14 @@ def count(number: int, noun: str) -> str:
     return f"{number:,} {noun}" if number == 1 else f"{number:,} {noun}s"
 
 
+def extrapolated(error_s: float) -> str:
+    """That the Earth's rotation is not known for the night or the instant, and what it may cost."""
+    return (
+        "The rotation of the Earth is extrapolated past its table: UT1, and with it what the stars do, may "
+        f"be off by {error_s:.2g} s"
+    )
+
+
 def rows_line(targets: Any, done: str = "planned") -> str:
     """What became of the rows: none is lost."""
     return (

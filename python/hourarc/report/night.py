@@ -7,7 +7,7 @@ from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
-from ._text import NEVER, aligned, called, count, date_and_clock, hours, rows_line
+from ._text import NEVER, aligned, called, count, date_and_clock, extrapolated, hours, rows_line
 
 if TYPE_CHECKING:
     import pyarrow as pa
@@ -17,15 +17,26 @@ EXAMPLES = 5
 
 
 def night_report(
-    site: Any, night: datetime.date, almanac: Any, windows: pa.Table, blocked: pa.Table, targets: Any
+    site: Any,
+    night: datetime.date,
+    almanac: Any,
+    windows: pa.Table,
+    blocked: pa.Table,
+    targets: Any,
+    earth: Any,
 ) -> str:
-    """The night as a page of text. `almanac` has this one night; the tables are those of the result files."""
+    """The night as a page of text.
+
+    `almanac` has this one night; the tables are those of the result files; `earth` is the Earth's orientation
+    at the end of the night.
+    """
     lines = [
         called(site),
         f"Night of {night}, local mean noon to noon: {date_and_clock(almanac.start[0])} "
         f"to {date_and_clock(almanac.stop[0])}. All times are UTC.",
         "",
         *_sky(almanac),
+        *([extrapolated(earth.ut1_error_s)] if earth.quality_words == "extrapolated" else []),
         "",
         rows_line(targets),
         *_with_windows(windows),

@@ -6,7 +6,7 @@ from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
-from ._text import aligned, called, count, rows_line
+from ._text import aligned, called, count, extrapolated, rows_line
 
 if TYPE_CHECKING:
     import pyarrow as pa
@@ -18,12 +18,17 @@ EXAMPLES = 5
 _AIRMASSES = (1.2, 1.5, 2.0, 3.0)
 
 
-def sky_report(site: Any, at: np.datetime64, lights: Any, places: pa.Table, targets: Any) -> str:
-    """The instant as a page of text. `lights`: the places of Sun and Moon; `places`: the result's table."""
+def sky_report(site: Any, at: np.datetime64, lights: Any, places: pa.Table, targets: Any, earth: Any) -> str:
+    """The instant as a page of text.
+
+    `lights`: the places of Sun and Moon; `places`: the result's table; `earth`: the Earth's orientation.
+    """
     lines = [called(site), f"{str(at.astype('datetime64[s]')).replace('T', ' ')} UTC", ""]
     for i, name in enumerate(("Sun", "Moon")):
         altitude, azimuth = float(lights.altitude_deg[i]), float(lights.azimuth_deg[i])
         lines.append(f"  {name:<5} altitude {altitude:+.1f}°, azimuth {azimuth:.1f}°{_light(name, altitude)}")
+    if earth.quality_words == "extrapolated":
+        lines.append(extrapolated(earth.ut1_error_s))
     altitude, airmass = places["altitude_deg"].to_numpy(), places["airmass"].to_numpy()
     up = int((altitude > 0.0).sum())
     lines += ["", rows_line(targets, "placed"), f"{count(up, 'target')} above the horizon"]
