@@ -73,7 +73,7 @@ def extrapolated(error_s: float) -> str:
     """That the Earth's rotation is not known for the night or the instant, and what it may cost."""
     return (
         "The rotation of the Earth is extrapolated past its table: UT1, and with it what the stars do, may "
-        f"be off by {error_s:.2g} s"
+        f"be off by {error_s:.{0 if error_s >= 10.0 else 1}f} s"
     )
 
 
