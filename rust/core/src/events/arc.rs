@@ -63,22 +63,22 @@ pub struct Arc<'a> {
     /// Sine and cosine of the latitude.
     pub latitude: Latitude,
     /// The sky of the Earth's centre at the three nodes.
-    centre: [Sky; 3],
+    pub(super) centre: [Sky; 3],
     /// Angle of rotation at the three nodes, unwrapped, and coefficients of powers of the day's fraction.
-    rotation_angle: [f64; 3],
-    rotation: [f64; 3],
+    pub(super) rotation_angle: [f64; 3],
+    pub(super) rotation: [f64; 3],
     /// From the rotated axes to the horizon: at the middle of the day, and coefficients.
     horizon_at_middle: Matrix,
-    horizon: [Matrix; 3],
+    pub(super) horizon: [Matrix; 3],
     /// From the CIRS to the horizon at the beginning and the end, from the nodes themselves.
     ends: [Matrix; 2],
     /// The horizontal plane.
     zenith: Plane,
     /// Third differences of the celestial intermediate pole over the day: X and Y of the track less
     /// the quadratics are these times u (u − ½)(u − 1).
-    bend: [f64; 2],
+    pub(super) bend: [f64; 2],
     /// Velocity of the site by the rotation over the speed of light, towards the east.
-    diurnal_aberration: f64,
+    pub(super) diurnal_aberration: f64,
     track: &'a Track,
 }
 
@@ -282,9 +282,9 @@ pub struct Plane {
     /// Unit normal on the horizon: north, east, zenith.
     pub normal: Vector,
     /// Longitude of the normal on the rotating axes, and its components along the pole and across it.
-    longitude: f64,
-    along_pole: f64,
-    across_pole: f64,
+    pub(super) longitude: f64,
+    pub(super) along_pole: f64,
+    pub(super) across_pole: f64,
 }
 
 impl Plane {

@@ -2,6 +2,7 @@
 
 mod almanac;
 mod arc;
+mod batch;
 mod crossing;
 mod days;
 mod passages;
@@ -14,6 +15,7 @@ pub use arc::{
     Arc, BODY_ARC_ERROR_RAD, BODY_NODES, BodyArc, Plane, SEPARATION_NODES, STAR_ARC_ERROR_RAD, Screen,
     StarArc, directions_at, node_fraction,
 };
+pub use batch::{BATCH, BatchSpace, star_events};
 pub(crate) use crossing::STAR_REACH_RAD;
 pub use crossing::{Crossing, Culmination, DayPath};
 pub use days::{Days, span_ends, track_for, track_plan, utc_text};

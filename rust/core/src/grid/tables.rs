@@ -2,10 +2,10 @@
 //! says where each target's begin (compressed sparse rows).
 
 use super::parallel::Workers;
-use crate::astrometry::Targets;
+use crate::astrometry::{Catalog, Targets};
 use crate::constants::RADIANS_PER_DEGREE;
 use crate::error::{Error, Result, Status};
-use crate::events::{Days, Event, Passage, rise_transit_set};
+use crate::events::{BATCH, BatchSpace, Days, Event, Passage, rise_transit_set, star_events};
 use crate::windows::{LimitedSpan, Limits, TargetWindows, Window, Workspace};
 
 /// Targets a block: some milliseconds of work for one night.
@@ -111,27 +111,95 @@ pub fn event_table(
 ) -> Result<EventTable> {
     days.prepare(targets)?;
     let days = &*days;
-    let blocks =
-        by_target(targets.len(), days.arcs.len(), workers, |row, (): &mut (), events: &mut Vec<Event>| {
-            rise_transit_set(days, targets, row, threshold, events)
-        })?;
+    let blocks = match targets {
+        Targets::Catalog(catalog) => star_blocks(days, catalog, threshold, workers)?,
+        Targets::Bodies(_) => by_target(
+            targets.len(),
+            days.arcs.len(),
+            workers,
+            |row, (): &mut (), events: &mut Vec<Event>| {
+                rise_transit_set(days, targets, row, threshold, events)
+            },
+        )?,
+    };
     let mut table = EventTable { offsets: offsets(&blocks), ..EventTable::default() };
-    for block in &blocks {
-        for event in &block.rows {
-            table.kind.push(event.kind as u8);
-            table.time.push(event.time.nanoseconds());
-            table.azimuth_deg.push(event.azimuth / RADIANS_PER_DEGREE);
-            table.altitude_deg.push(event.altitude / RADIANS_PER_DEGREE);
-            table.computed_error_s.push(event.computed_error_s);
-            table.horizon_scatter_s.push(event.horizon_scatter_s);
-        }
-        for (_, summary) in &block.targets {
-            let (passage, status): &(Passage, Status) = summary;
-            table.passage.push(*passage as u8);
-            table.status.push(*status as u8);
-        }
+    for (passage, status) in blocks.iter().flat_map(|block| block.targets.iter().map(|target| target.1)) {
+        table.passage.push(passage as u8);
+        table.status.push(status as u8);
     }
+    table.fill(&blocks, workers)?;
     Ok(table)
+}
+
+/// The events of a catalogue, batch by batch.
+fn star_blocks(
+    days: &Days<'_>,
+    catalog: &Catalog,
+    threshold: f64,
+    workers: &mut Workers<'_>,
+) -> Result<Vec<Block<Event, (Passage, Status)>>> {
+    let isa = workers.isa();
+    let mut slots: Vec<Option<Block<Event, (Passage, Status)>>> = Vec::new();
+    slots.resize_with(catalog.len().div_ceil(BATCH), || None);
+    let tasks = slots.iter_mut().enumerate().collect();
+    workers.for_each_with(
+        tasks,
+        Box::<BatchSpace>::default,
+        |space, (number, slot): (usize, &mut Option<_>)| {
+            let rows = number * BATCH..catalog.len().min((number + 1) * BATCH);
+            let mut block =
+                Block { rows: Vec::with_capacity(4 * rows.len()), targets: Vec::with_capacity(rows.len()) };
+            star_events(days, catalog, rows, threshold, isa, space, &mut block.rows, &mut block.targets);
+            *slot = Some(block);
+        },
+    )?;
+    slots.into_iter().collect::<Option<Vec<_>>>().ok_or_else(Error::interrupted)
+}
+
+impl EventTable {
+    /// Writes the events into the columns, a block's by one thread.
+    fn fill(&mut self, blocks: &[Block<Event, (Passage, Status)>], workers: &mut Workers<'_>) -> Result<()> {
+        let rows: usize = blocks.iter().map(|block| block.rows.len()).sum();
+        self.kind = vec![0; rows];
+        self.time = vec![0; rows];
+        self.azimuth_deg = vec![0.0; rows];
+        self.altitude_deg = vec![0.0; rows];
+        self.computed_error_s = vec![0.0; rows];
+        self.horizon_scatter_s = vec![0.0; rows];
+        let mut kind = &mut self.kind[..];
+        let mut time = &mut self.time[..];
+        let mut azimuth = &mut self.azimuth_deg[..];
+        let mut altitude = &mut self.altitude_deg[..];
+        let mut error = &mut self.computed_error_s[..];
+        let mut scatter = &mut self.horizon_scatter_s[..];
+        let mut tasks = Vec::with_capacity(blocks.len());
+        for block in blocks {
+            let n = block.rows.len();
+            tasks.push((
+                &block.rows,
+                cut(&mut kind, n),
+                cut(&mut time, n),
+                [cut(&mut azimuth, n), cut(&mut altitude, n), cut(&mut error, n), cut(&mut scatter, n)],
+            ));
+        }
+        workers.for_each(tasks, |(events, kind, time, [azimuth, altitude, error, scatter])| {
+            for (i, event) in events.iter().enumerate() {
+                kind[i] = event.kind as u8;
+                time[i] = event.time.nanoseconds();
+                azimuth[i] = event.azimuth / RADIANS_PER_DEGREE;
+                altitude[i] = event.altitude / RADIANS_PER_DEGREE;
+                error[i] = event.computed_error_s;
+                scatter[i] = event.horizon_scatter_s;
+            }
+        })
+    }
+}
+
+/// Takes the first `n` values off a slice.
+fn cut<'a, T>(rest: &mut &'a mut [T], n: usize) -> &'a mut [T] {
+    let (first, after) = std::mem::take(rest).split_at_mut(n);
+    *rest = after;
+    first
 }
 
 /// Windows of every target over the span.
