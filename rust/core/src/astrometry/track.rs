@@ -74,6 +74,14 @@ impl TrackPlan {
         Self::of_intervals(intervals)
     }
 
+    /// One plan for all that several cover.
+    pub fn join(plans: Vec<TrackPlan>) -> Self {
+        let mut intervals: Vec<i64> = plans.into_iter().flat_map(|plan| plan.intervals).collect();
+        intervals.sort_unstable();
+        intervals.dedup();
+        Self::of_intervals(intervals)
+    }
+
     fn of_intervals(intervals: Vec<i64>) -> Self {
         let mut nodes = Vec::with_capacity(intervals.len() + POINTS);
         for &interval in &intervals {

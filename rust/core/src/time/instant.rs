@@ -50,13 +50,28 @@ pub struct Instant<S: Scale> {
     scale: PhantomData<S>,
 }
 
+/// The largest whole number not above `x`: [`f64::floor`], which is a call on processors that are not
+/// asked for more than the least, where this is three additions.
+#[inline(always)]
+fn floor(x: f64) -> f64 {
+    /// 1.5 · 2⁵²: beside it there is no room for a fraction.
+    const SHIFT: f64 = 6_755_399_441_055_744.0;
+    if x.abs() < 1e15 {
+        let nearest = (x + SHIFT) - SHIFT;
+        if nearest > x { nearest - 1.0 } else { nearest }
+    } else {
+        x.floor()
+    }
+}
+
 impl<S: Scale> Instant<S> {
     /// The instant at MJD `day + fraction`, both in days, of any size and sign and split in any way.
     ///
     /// The parts are added without loss: the result is within 1.1e-16 day of their exact sum
     /// (`any_split_gives_the_same_instant`). NaN or an infinity in either gives an instant of NaN.
+    #[inline]
     pub fn from_mjd(day: f64, fraction: f64) -> Self {
-        let (day_floor, fraction_floor) = (day.floor(), fraction.floor());
+        let (day_floor, fraction_floor) = (floor(day), floor(fraction));
         // Both remainders are exact; only their sum rounds, and it is below 2.
         let rest = (day - day_floor) + (fraction - fraction_floor);
         let mut whole = day_floor + fraction_floor;
@@ -85,6 +100,10 @@ impl<S: Scale> Instant<S> {
     /// The instant `seconds` later; negative for earlier. Error: 2.2e-16 day
     /// (`seconds_added_come_back`).
     pub fn plus_seconds(self, seconds: f64) -> Self {
+        if seconds.abs() < SECONDS_PER_DAY {
+            // What comes out below, without the remainder's division.
+            return Instant::from_mjd(self.day, self.fraction + seconds / SECONDS_PER_DAY);
+        }
         // The remainder is exact, so whole days lose nothing however many they are.
         let rest = seconds % SECONDS_PER_DAY;
         let days = ((seconds - rest) / SECONDS_PER_DAY).round();

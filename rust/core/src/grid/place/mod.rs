@@ -15,6 +15,9 @@ use crate::time::{Instant, Tai, Utc};
 
 pub use self::columns::{PLACE_AIRMASS, PlaceColumn, PlaceColumns};
 
+/// Instants a block when they are converted.
+const INSTANTS: usize = 8192;
+
 /// How instants and targets meet.
 #[derive(Debug, Clone, Copy, PartialEq, Eq)]
 pub enum Shape {
@@ -50,10 +53,14 @@ pub fn place(
     };
     out.check(rows)?;
     let leap_seconds = observer.orientation.leap_seconds();
-    let instants: Vec<std::result::Result<Instant<Tai>, Status>> =
-        when.iter().map(|&utc| leap_seconds.to_tai(utc)).collect();
-    let plan = TrackPlan::through(instants.iter().filter_map(|instant| instant.ok()));
-    let track = workers.track(plan, observer.ephemeris)?;
+    let parts = workers.map(when.chunks(INSTANTS).collect(), |when: &[Utc]| {
+        let instants: Vec<_> = when.iter().map(|&utc| leap_seconds.to_tai(utc)).collect();
+        let plan = TrackPlan::through(instants.iter().filter_map(|instant| instant.ok()));
+        Ok((instants, plan))
+    })?;
+    let (instants, plans): (Vec<_>, Vec<_>) = parts.into_iter().unzip();
+    let instants = instants.concat();
+    let track = workers.track(TrackPlan::join(plans), observer.ephemeris)?;
     let job = Job { observer, targets, instants: &instants, shape, track: &track, isa: workers.isa() };
     workers.for_each(out.blocks(ROWS), |(first, block)| job.block(first, block))
 }
