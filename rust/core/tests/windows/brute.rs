@@ -290,7 +290,9 @@ fn every_second_of_random_days_agrees() {
         let mut setting =
             Setting::new(random.between(-180.0, 180.0), latitude_deg, random.between(0.0, 4000.0));
         setting.site = setting.site.clone().with_skyline(random_skyline(&mut random));
-        let mjd = random.between(58_000.0, 62_000.0).floor();
+        // One day has a new Moon, at which the Moon's age begins anew: 2023-03-21 17:23 UTC.
+        let new_moon = number % 8 == 5;
+        let mjd = if new_moon { 60_024.0 } else { random.between(58_000.0, 62_000.0).floor() };
         let begin = random.unit();
         let of_stars = number % 4 != 3;
         let bodies = [Body::Sun, Body::Moon, Body::Venus, Body::Mars, Body::Jupiter];
@@ -308,7 +310,13 @@ fn every_second_of_random_days_agrees() {
             .collect();
         let catalog = stars(&places);
         let targets = if of_stars { Targets::Catalog(&catalog) } else { Targets::Bodies(&bodies) };
-        let limits = random_limits(&mut random, targets.len(), mjd + begin.floor(), of_stars);
+        let mut limits = random_limits(&mut random, targets.len(), mjd + begin.floor(), of_stars);
+        if new_moon {
+            limits.moon_avoidance = Some(MoonAvoidance::Lorentzian {
+                separation: Column::All(random.between(1.5, 3.0)),
+                width_d: Column::All(random.between(6.0, 14.0)),
+            });
+        }
         let days = 1.0;
         let planned = setting.windows(&targets, &limits, mjd + begin, days);
         target_days += planned.len();

@@ -2,6 +2,7 @@
 
 mod brute;
 mod cases;
+mod sure;
 
 use hourarc_core::astrometry::{
     Catalog, CatalogColumns, Observer, Sky, Targets, Track, body_direction, star_direction,
