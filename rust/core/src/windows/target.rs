@@ -344,10 +344,11 @@ impl<'a> LimitedSpan<'a> {
             }
             Cause::HourAngle => {
                 let bounds = (value(&limits.hour_angle_min, -PI), value(&limits.hour_angle_max, PI));
-                fill_hour_angle(arc, path, bounds, part, reason, changes, set);
+                fill_hour_angle(arc, path, bounds, part, reason, (crossings, changes), set);
             }
             Cause::AzimuthSectors => {
-                fill_sectors(arc, path, limits.azimuth_sectors.as_deref().unwrap_or(&[]), part, reason, set);
+                let sectors = limits.azimuth_sectors.as_deref().unwrap_or(&[]);
+                fill_sectors(arc, path, sectors, part, reason, (crossings, changes), set);
             }
             Cause::AzimuthRate => {
                 let most = value(&limits.azimuth_rate_max, f64::INFINITY);

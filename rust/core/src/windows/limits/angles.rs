@@ -20,11 +20,12 @@ fn half_plane<P: DayPath>(
     normal: Vector,
     ahead: Vector,
     within: (f64, f64),
+    crossings: &mut Vec<Crossing>,
     mut push: impl FnMut(f64, bool),
 ) {
-    let mut crossings: Vec<Crossing> = Vec::new();
-    path.plane_crossings(arc, &arc.plane(normal), 0.0, within, &mut crossings);
-    for crossing in crossings {
+    crossings.clear();
+    path.plane_crossings(arc, &arc.plane(normal), 0.0, within, crossings);
+    for crossing in crossings.iter() {
         if dot(ahead, path.local(arc, crossing.at)) > 0.0 {
             push(crossing.at, crossing.rising);
         }
@@ -38,7 +39,7 @@ pub fn fill_hour_angle<P: DayPath>(
     (least, most): (f64, f64),
     (range, within): (Interval, (f64, f64)),
     reason: u8,
-    changes: &mut Passages,
+    (crossings, changes): (&mut Vec<Crossing>, &mut Passages),
     set: &mut IntervalSet,
 ) {
     let pi = std::f64::consts::PI;
@@ -53,7 +54,9 @@ pub fn fill_hour_angle<P: DayPath>(
         let (sin, cos) = bound.sin_cos();
         let normal = [sin_latitude * sin, -cos, -cos_latitude * sin];
         let ahead = [-sin_latitude * cos, -sin, cos_latitude * cos];
-        half_plane(arc, path, normal, ahead, within, |at, rising| changes.push((at, rising == opens)));
+        half_plane(arc, path, normal, ahead, within, crossings, |at, rising| {
+            changes.push((at, rising == opens));
+        });
     }
     // Where the range ends at the lower culmination as another begins, it closes before it opens.
     changes.sort_by(|a, b| a.0.total_cmp(&b.0).then(a.1.cmp(&b.1)));
@@ -94,11 +97,11 @@ pub fn fill_sectors<P: DayPath>(
     sectors: &[(f64, f64)],
     (range, within): (Interval, (f64, f64)),
     reason: u8,
+    (crossings, changes): (&mut Vec<Crossing>, &mut Passages),
     set: &mut IntervalSet,
 ) {
     set.clear();
     let at_start = azimuth(path.local_at_end(arc, false));
-    let mut changes: Passages = Vec::new();
     let mut sector_set = IntervalSet::new();
     for &(from, to) in sectors {
         // The whole circle, or the rounding of it.
@@ -111,7 +114,7 @@ pub fn fill_sectors<P: DayPath>(
         changes.clear();
         for (bound, opens) in [(from, true), (to, false)] {
             let (sin, cos) = bound.sin_cos();
-            half_plane(arc, path, [-sin, cos, 0.0], [cos, sin, 0.0], within, |at, rising| {
+            half_plane(arc, path, [-sin, cos, 0.0], [cos, sin, 0.0], within, crossings, |at, rising| {
                 changes.push((at, rising == opens));
             });
         }
