@@ -8,8 +8,10 @@ mod parallel;
 mod place;
 mod season;
 mod tables;
+mod watch;
 
 pub use parallel::{KEEP_GOING, Workers};
 pub use place::{PLACE_AIRMASS, PlaceColumn, PlaceColumns, Shape, place};
 pub use season::{GridColumns, GridQuantity, GridReport, GridValues, visibility_grid};
 pub use tables::{EventTable, WindowTable, event_table, window_table};
+pub use watch::{Watch, WatchColumns, WatchedWindows};

@@ -3,23 +3,26 @@
 //! The loops are compiled for every instruction set and have no branch and no call in them, so LLVM
 //! runs them on whole registers.
 
-use super::columns::{PLACE_AIRMASS, PlaceColumn};
-use crate::astrometry::{Sky, StarColumns, star_direction};
-use crate::constants::RADIANS_PER_DEGREE;
+use super::columns::{PLACE_AIRMASS, PlaceColumn, PlaceColumns};
+use crate::astrometry::{Observer, Sky, StarColumns, star_direction};
+use crate::constants::{EARTH_ROTATION_RAD_PER_S, RADIANS_PER_DEGREE};
 use crate::horizon::Latitude;
-use crate::math::dispatch::{Arithmetic, Kernel};
+use crate::math::dispatch::{Arithmetic, Isa, Kernel};
 use crate::math::elementary::{atan2, wrap_positive};
 use crate::math::vector::{Matrix, Vector, rotate};
 use crate::refraction::Refraction;
 
 /// Rows a block: what a block touches stays in the second level of the cache.
-pub(super) const ROWS: usize = 1024;
+pub(in crate::grid) const ROWS: usize = 1024;
 
+/// One number a row.
+type Numbers = [f64; ROWS];
 /// Components of one direction a row.
-pub(super) type Directions = [[f64; ROWS]; 3];
+pub(super) type Directions = [Numbers; 3];
 
 /// What is known of a block's rows before any angle is taken.
-pub(super) struct Buffers {
+#[derive(Clone)]
+pub(in crate::grid) struct Buffers {
     /// Proper direction on the axes of the GCRS.
     pub direction: Directions,
     /// The same towards north, east and zenith.
@@ -28,12 +31,36 @@ pub(super) struct Buffers {
     pub pole: Directions,
     pub moon: Directions,
     pub sun: Directions,
+    /// Altitudes without air and as observed, radians.
+    topocentric: Numbers,
+    observed: Numbers,
 }
 
 impl Buffers {
     pub fn new() -> Box<Self> {
         let none = [[f64::NAN; ROWS]; 3];
-        Box::new(Buffers { direction: none, local: none, pole: none, moon: none, sun: none })
+        let [topocentric, observed] = [[f64::NAN; ROWS]; 2];
+        Box::new(Buffers {
+            direction: none,
+            local: none,
+            pole: none,
+            moon: none,
+            sun: none,
+            topocentric,
+            observed,
+        })
+    }
+
+    /// Turns the directions of a block's first rows into the columns asked for.
+    pub fn write(&mut self, out: &mut PlaceColumns<'_>, observer: &Observer<'_>, isa: Isa) {
+        let rows = out.status.len();
+        if out.wants(PlaceColumn::AltitudeDeg) || out.wants(PlaceColumn::Airmass) {
+            isa.run(Altitudes { buffers: self, refraction: observer.refraction, rows });
+        }
+        let latitude = Latitude::new(observer.site.latitude());
+        for (column, values) in &mut out.columns {
+            isa.run(WriteColumn { column: *column, buffers: self, latitude, out: values });
+        }
     }
 }
 
@@ -80,16 +107,45 @@ impl Kernel for StarsUnderOneSky<'_> {
     }
 }
 
+/// The altitudes of a block, which more than one column is made of.
+struct Altitudes<'a> {
+    buffers: &'a mut Buffers,
+    refraction: &'a Refraction,
+    rows: usize,
+}
+
+impl Kernel for Altitudes<'_> {
+    type Output = ();
+
+    #[inline(always)]
+    fn run<A: Arithmetic>(self) {
+        let rows = self.rows.min(ROWS);
+        let [north, east, zenith] = &self.buffers.local;
+        let [north, east, zenith] = [north, east, zenith].map(|c| &c[..rows]);
+        let topocentric = &mut self.buffers.topocentric[..rows];
+        let observed = &mut self.buffers.observed[..rows];
+        for row in 0..rows {
+            let across = A::multiply_add(north[row], north[row], east[row] * east[row]).sqrt();
+            topocentric[row] = atan2::<A>(zenith[row], across);
+        }
+        // Apart from the loop above: a table look-up keeps LLVM from whole registers of the arctangent.
+        for row in 0..rows {
+            observed[row] = self.refraction.observed_altitude(topocentric[row]);
+        }
+    }
+}
+
 /// One column of a block.
-pub(super) struct WriteColumn<'a> {
-    pub column: PlaceColumn,
-    pub buffers: &'a Buffers,
-    pub refraction: &'a Refraction,
-    pub latitude: Latitude,
-    pub out: &'a mut [f64],
+struct WriteColumn<'a> {
+    column: PlaceColumn,
+    buffers: &'a Buffers,
+    latitude: Latitude,
+    out: &'a mut [f64],
 }
 
 const DEGREES_PER_RADIAN: f64 = 1.0 / RADIANS_PER_DEGREE;
+/// The rotation of the Earth, arcseconds a second: 15.041067.
+const ROTATION_ARCSEC_S: f64 = EARTH_ROTATION_RAD_PER_S * DEGREES_PER_RADIAN * 3600.0;
 
 impl Kernel for WriteColumn<'_> {
     type Output = ();
@@ -103,11 +159,8 @@ impl Kernel for WriteColumn<'_> {
         let Latitude { sin, cos } = self.latitude;
         match self.column {
             PlaceColumn::AltitudeDeg => {
-                for row in 0..rows {
-                    out[row] = topocentric::<A>(north[row], east[row], zenith[row]);
-                }
-                for value in out.iter_mut() {
-                    *value = self.refraction.observed_altitude(*value) * DEGREES_PER_RADIAN;
+                for (value, observed) in out.iter_mut().zip(&self.buffers.observed) {
+                    *value = observed * DEGREES_PER_RADIAN;
                 }
             }
             PlaceColumn::AzimuthDeg => {
@@ -130,10 +183,10 @@ impl Kernel for WriteColumn<'_> {
                 }
             }
             PlaceColumn::Airmass => {
+                let topocentric = &self.buffers.topocentric[..rows];
+                let observed = &self.buffers.observed[..rows];
                 for row in 0..rows {
-                    let altitude = topocentric::<A>(north[row], east[row], zenith[row]);
-                    let observed = self.refraction.observed_altitude(altitude);
-                    out[row] = PLACE_AIRMASS.airmass(observed, altitude);
+                    out[row] = PLACE_AIRMASS.airmass_in_loop::<A>(observed[row], topocentric[row]);
                 }
             }
             PlaceColumn::ParallacticAngleDeg => {
@@ -141,6 +194,18 @@ impl Kernel for WriteColumn<'_> {
                     let squared = north[row] * north[row] + east[row] * east[row];
                     let along = sin * squared - cos * zenith[row] * north[row];
                     out[row] = atan2::<A>(0.0 - cos * east[row], along) * DEGREES_PER_RADIAN;
+                }
+            }
+            PlaceColumn::AzimuthRateArcsecS => {
+                for row in 0..rows {
+                    let squared = north[row] * north[row] + east[row] * east[row];
+                    out[row] = ROTATION_ARCSEC_S * (sin - cos * north[row] * zenith[row] / squared);
+                }
+            }
+            PlaceColumn::ParallacticAngleRateArcsecS => {
+                for row in 0..rows {
+                    let squared = north[row] * north[row] + east[row] * east[row];
+                    out[row] = ROTATION_ARCSEC_S * (0.0 - cos * north[row] / squared);
                 }
             }
             PlaceColumn::MoonSeparationDeg => {
@@ -151,12 +216,6 @@ impl Kernel for WriteColumn<'_> {
             }
         }
     }
-}
-
-/// Altitude, radians, of a direction without air.
-#[inline(always)]
-fn topocentric<A: Arithmetic>(north: f64, east: f64, zenith: f64) -> f64 {
-    atan2::<A>(zenith, A::multiply_add(north, north, east * east).sqrt())
 }
 
 /// Angle between two unit vectors a row, degrees, well conditioned from 0 to 180.

@@ -23,6 +23,13 @@ pub enum PlaceColumn {
     MoonSeparationDeg,
     /// Distance from the Sun's centre, degrees, both topocentric without refraction.
     SunSeparationDeg,
+    /// Rate of the azimuth of a direction that is fixed among the stars, arcseconds a second, in vacuum:
+    /// ω (sin φ − cos φ cos A tan h), without bound towards the zenith. ω is that of the Earth's rotation; the
+    /// target's own motion, at most 4 % of it for the Moon, is left out.
+    AzimuthRateArcsecS,
+    /// The same of the parallactic angle, at which an altazimuth telescope's field rotates:
+    /// −ω cos φ cos A / cos h.
+    ParallacticAngleRateArcsecS,
 }
 
 /// The formula behind [`PlaceColumn::Airmass`].
@@ -30,7 +37,7 @@ pub const PLACE_AIRMASS: AirmassModel = AirmassModel::KastenYoung1989;
 
 impl PlaceColumn {
     /// Every column.
-    pub const ALL: [PlaceColumn; 8] = [
+    pub const ALL: [PlaceColumn; 10] = [
         PlaceColumn::AltitudeDeg,
         PlaceColumn::AzimuthDeg,
         PlaceColumn::HourAngleDeg,
@@ -39,6 +46,8 @@ impl PlaceColumn {
         PlaceColumn::ParallacticAngleDeg,
         PlaceColumn::MoonSeparationDeg,
         PlaceColumn::SunSeparationDeg,
+        PlaceColumn::AzimuthRateArcsecS,
+        PlaceColumn::ParallacticAngleRateArcsecS,
     ];
 
     /// The word for this column.
@@ -52,6 +61,8 @@ impl PlaceColumn {
             PlaceColumn::ParallacticAngleDeg => "parallactic_angle_deg",
             PlaceColumn::MoonSeparationDeg => "moon_separation_deg",
             PlaceColumn::SunSeparationDeg => "sun_separation_deg",
+            PlaceColumn::AzimuthRateArcsecS => "azimuth_rate_arcsec_s",
+            PlaceColumn::ParallacticAngleRateArcsecS => "parallactic_angle_rate_arcsec_s",
         }
     }
 
@@ -78,7 +89,7 @@ pub struct PlaceColumns<'a> {
 
 impl<'a> PlaceColumns<'a> {
     /// Whether every column has as many values as there are rows.
-    pub(super) fn check(&self, rows: usize) -> Result<()> {
+    pub(in crate::grid) fn check(&self, rows: usize) -> Result<()> {
         let lengths = self.columns.iter().map(|(column, values)| (column.word(), values.len()));
         for (name, length) in lengths.chain([("status", self.status.len())]) {
             if length != rows {
@@ -89,7 +100,7 @@ impl<'a> PlaceColumns<'a> {
     }
 
     /// Cut into blocks of `size` rows, each with the number of its first row.
-    pub(super) fn blocks(self, size: usize) -> Vec<(usize, PlaceColumns<'a>)> {
+    pub(in crate::grid) fn blocks(self, size: usize) -> Vec<(usize, PlaceColumns<'a>)> {
         let mut blocks = Vec::with_capacity(self.status.len().div_ceil(size));
         let (mut first, mut rest) = (0, self);
         while !rest.status.is_empty() {
@@ -101,7 +112,7 @@ impl<'a> PlaceColumns<'a> {
         blocks
     }
 
-    fn split_at(self, rows: usize) -> (Self, Self) {
+    pub(in crate::grid) fn split_at(self, rows: usize) -> (Self, Self) {
         let (status, rest_status) = self.status.split_at_mut(rows);
         let (columns, rest) = self
             .columns
@@ -114,7 +125,7 @@ impl<'a> PlaceColumns<'a> {
         (PlaceColumns { columns, status }, PlaceColumns { columns: rest, status: rest_status })
     }
 
-    pub(super) fn wants(&self, wanted: PlaceColumn) -> bool {
+    pub(in crate::grid) fn wants(&self, wanted: PlaceColumn) -> bool {
         self.columns.iter().any(|(column, _)| *column == wanted)
     }
 }

@@ -1,16 +1,15 @@
 //! Where targets are, at one instant, at many, or each row at its own.
 
 mod buffers;
+mod chain;
 mod columns;
 
-use self::buffers::{Buffers, ROWS, StarsUnderOneSky, WriteColumn, fill, set};
+use self::buffers::fill;
+pub(super) use self::buffers::{Buffers, ROWS};
+pub(super) use self::chain::Chain;
 use super::parallel::Workers;
-use crate::astrometry::{Observer, Sky, Targets, Track, TrackPlan, body_direction, star_direction};
-use crate::ephemeris::Body;
+use crate::astrometry::{Observer, Sky, Targets, Track, TrackPlan};
 use crate::error::{Error, Result, Status};
-use crate::horizon::Latitude;
-use crate::math::dispatch::Isa;
-use crate::math::vector::{Vector, rotate};
 use crate::time::{Instant, Tai, Utc};
 
 pub use self::columns::{PLACE_AIRMASS, PlaceColumn, PlaceColumns};
@@ -61,109 +60,72 @@ pub fn place(
     let (instants, plans): (Vec<_>, Vec<_>) = parts.into_iter().unzip();
     let instants = instants.concat();
     let track = workers.track(TrackPlan::join(plans), observer.ephemeris)?;
-    let job = Job { observer, targets, instants: &instants, shape, track: &track, isa: workers.isa() };
-    workers.for_each(out.blocks(ROWS), |(first, block)| job.block(first, block))
+    let chain = Chain { observer, targets, isa: workers.isa() };
+    let job = Job { chain, instants: &instants, shape, track: &track };
+    let space = || Space { buffers: Buffers::new(), last: None };
+    workers.for_each_with(out.blocks(ROWS), space, |space, (first, block)| job.block(first, block, space))
 }
 
 struct Job<'a> {
-    observer: &'a Observer<'a>,
-    targets: &'a Targets<'a>,
+    chain: Chain<'a>,
     instants: &'a [std::result::Result<Instant<Tai>, Status>],
     shape: Shape,
     track: &'a Track,
-    isa: Isa,
 }
 
+/// What a thread keeps from block to block.
+struct Space {
+    buffers: Box<Buffers>,
+    /// The last instant's number and sky: neighbouring blocks share it.
+    last: LastSky,
+}
+
+type LastSky = Option<(usize, std::result::Result<Sky, Status>)>;
+
 impl Job<'_> {
-    fn block(&self, first: usize, mut out: PlaceColumns<'_>) {
+    fn block(&self, first: usize, mut out: PlaceColumns<'_>, space: &mut Space) {
         let rows = out.status.len();
-        let mut buffers = Buffers::new();
+        let targets = self.chain.targets.len();
         let mut row = 0;
         while row < rows {
             // As many rows as share an instant.
             let (time, target) = match self.shape {
-                Shape::Grid => ((first + row) / self.targets.len(), (first + row) % self.targets.len()),
+                Shape::Grid => ((first + row) / targets, (first + row) % targets),
                 Shape::Pairwise => (first + row, first + row),
             };
             let count = match self.shape {
-                Shape::Grid => (rows - row).min(self.targets.len() - target),
+                Shape::Grid => (rows - row).min(targets - target),
                 Shape::Pairwise => 1,
             };
             let range = row..row + count;
-            match self.instants[time].and_then(|tai| self.track.sky(self.observer, tai)) {
-                Ok(sky) => self.directions(&sky, target, range.clone(), &mut buffers, &mut out),
-                Err(bad) => {
-                    fill(&mut buffers.direction, range.clone(), [f64::NAN; 3]);
-                    fill(&mut buffers.local, range.clone(), [f64::NAN; 3]);
+            match self.sky(time, &mut space.last) {
+                Ok(sky) => {
+                    self.chain.partners(sky, range.clone(), &mut space.buffers, &out);
+                    self.chain.directions(sky, target, range, &mut space.buffers, &mut out);
+                }
+                &Err(bad) => {
+                    fill(&mut space.buffers.direction, range.clone(), [f64::NAN; 3]);
+                    fill(&mut space.buffers.local, range.clone(), [f64::NAN; 3]);
                     for (status, target) in out.status[range].iter_mut().zip(target..) {
                         // A row that is bad in itself is so at every instant.
-                        let own = self.targets.status(target);
+                        let own = self.chain.targets.status(target);
                         *status = if own.is_bad() { own } else { bad } as u8;
                     }
                 }
             }
             row += count;
         }
-        let latitude = Latitude::new(self.observer.site.latitude());
-        for (column, values) in &mut out.columns {
-            self.isa.run(WriteColumn {
-                column: *column,
-                buffers: &buffers,
-                refraction: self.observer.refraction,
-                latitude,
-                out: values,
-            });
-        }
+        space.buffers.write(&mut out, self.chain.observer, self.chain.isa);
     }
 
-    /// Directions of the targets from `target` on, under one sky, into the rows of a block.
-    fn directions(
-        &self,
-        sky: &Sky,
-        target: usize,
-        rows: std::ops::Range<usize>,
-        buffers: &mut Buffers,
-        out: &mut PlaceColumns<'_>,
-    ) {
-        let note = sky.note();
-        for (status, target) in out.status[rows.clone()].iter_mut().zip(target..) {
-            *status = self.targets.status(target).worst(note) as u8;
+    /// The sky of an instant; that of the last one is kept where others will ask for it.
+    fn sky<'s>(&self, time: usize, last: &'s mut LastSky) -> &'s std::result::Result<Sky, Status> {
+        if self.shape == Shape::Pairwise || last.as_ref().is_none_or(|(number, _)| *number != time) {
+            *last = None;
         }
-        match self.targets {
-            Targets::Catalog(catalog) if rows.len() > 1 => {
-                let stars = catalog.columns(target..target + rows.len());
-                self.isa.run(StarsUnderOneSky { stars, sky, first: rows.start, buffers });
-            }
-            Targets::Catalog(catalog) => {
-                let direction = star_direction(&catalog.star(target), sky);
-                set(&mut buffers.direction, rows.start, direction);
-                set(&mut buffers.local, rows.start, rotate(&sky.local, direction));
-            }
-            Targets::Bodies(bodies) => {
-                for (row, body) in rows.clone().zip(&bodies[target..]) {
-                    let direction = self.body(*body, sky).unwrap_or_else(|status| {
-                        out.status[row] = status as u8;
-                        [f64::NAN; 3]
-                    });
-                    set(&mut buffers.direction, row, direction);
-                    set(&mut buffers.local, row, rotate(&sky.local, direction));
-                }
-            }
-        }
-        if out.wants(PlaceColumn::DeclinationDeg) {
-            fill(&mut buffers.pole, rows.clone(), sky.intermediate[2]);
-        }
-        for (column, body, directions) in [
-            (PlaceColumn::MoonSeparationDeg, Body::Moon, &mut buffers.moon),
-            (PlaceColumn::SunSeparationDeg, Body::Sun, &mut buffers.sun),
-        ] {
-            if out.wants(column) {
-                fill(directions, rows.clone(), self.body(body, sky).unwrap_or([f64::NAN; 3]));
-            }
-        }
-    }
-
-    fn body(&self, body: Body, sky: &Sky) -> std::result::Result<Vector, Status> {
-        Ok(body_direction(body, self.observer.ephemeris, sky)?.direction)
+        let (_, sky) = last.get_or_insert_with(|| {
+            (time, self.instants[time].and_then(|tai| self.track.sky(self.chain.observer, tai)))
+        });
+        sky
     }
 }

@@ -1,0 +1,75 @@
+//! The chain of a block's rows under one sky.
+
+use super::buffers::{Buffers, StarsUnderOneSky, fill, set};
+use super::columns::{PlaceColumn, PlaceColumns};
+use crate::astrometry::{Observer, Sky, Targets, body_direction, star_direction};
+use crate::ephemeris::Body;
+use crate::error::Status;
+use crate::math::dispatch::Isa;
+use crate::math::vector::{Vector, rotate};
+use std::ops::Range;
+
+/// Who looks at what, and with which instructions.
+#[derive(Clone, Copy)]
+pub(in crate::grid) struct Chain<'a> {
+    pub observer: &'a Observer<'a>,
+    pub targets: &'a Targets<'a>,
+    pub isa: Isa,
+}
+
+impl Chain<'_> {
+    /// Directions of the targets from `target` on, under one sky, into the rows of a block.
+    pub fn directions(
+        &self,
+        sky: &Sky,
+        target: usize,
+        rows: Range<usize>,
+        buffers: &mut Buffers,
+        out: &mut PlaceColumns<'_>,
+    ) {
+        let note = sky.note();
+        for (status, target) in out.status[rows.clone()].iter_mut().zip(target..) {
+            *status = self.targets.status(target).worst(note) as u8;
+        }
+        match self.targets {
+            Targets::Catalog(catalog) if rows.len() > 1 => {
+                let stars = catalog.columns(target..target + rows.len());
+                self.isa.run(StarsUnderOneSky { stars, sky, first: rows.start, buffers });
+            }
+            Targets::Catalog(catalog) => {
+                let direction = star_direction(&catalog.star(target), sky);
+                set(&mut buffers.direction, rows.start, direction);
+                set(&mut buffers.local, rows.start, rotate(&sky.local, direction));
+            }
+            Targets::Bodies(bodies) => {
+                for (row, body) in rows.clone().zip(&bodies[target..]) {
+                    let direction = self.body(*body, sky).unwrap_or_else(|status| {
+                        out.status[row] = status as u8;
+                        [f64::NAN; 3]
+                    });
+                    set(&mut buffers.direction, row, direction);
+                    set(&mut buffers.local, row, rotate(&sky.local, direction));
+                }
+            }
+        }
+    }
+
+    /// What the columns asked for measure targets against, under one sky, into the rows of a block.
+    pub fn partners(&self, sky: &Sky, rows: Range<usize>, buffers: &mut Buffers, out: &PlaceColumns<'_>) {
+        if out.wants(PlaceColumn::DeclinationDeg) {
+            fill(&mut buffers.pole, rows.clone(), sky.intermediate[2]);
+        }
+        for (column, body, directions) in [
+            (PlaceColumn::MoonSeparationDeg, Body::Moon, &mut buffers.moon),
+            (PlaceColumn::SunSeparationDeg, Body::Sun, &mut buffers.sun),
+        ] {
+            if out.wants(column) {
+                fill(directions, rows.clone(), self.body(body, sky).unwrap_or([f64::NAN; 3]));
+            }
+        }
+    }
+
+    fn body(&self, body: Body, sky: &Sky) -> std::result::Result<Vector, Status> {
+        Ok(body_direction(body, self.observer.ephemeris, sky)?.direction)
+    }
+}
