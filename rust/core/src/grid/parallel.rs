@@ -25,6 +25,8 @@ pub struct Workers<'a> {
     threads: usize,
     isa: Isa,
     keep_going: &'a mut dyn FnMut() -> bool,
+    /// When the caller was asked last: a call is many loops, each of which may be short.
+    asked: std::time::Instant,
 }
 
 impl<'a> Workers<'a> {
@@ -35,7 +37,7 @@ impl<'a> Workers<'a> {
             0 => std::thread::available_parallelism().map_or(1, usize::from),
             threads => threads,
         };
-        Workers { threads, isa: Isa::best(), keep_going }
+        Workers { threads, isa: Isa::best(), keep_going, asked: std::time::Instant::now() }
     }
 
     /// With loops compiled for one instruction set, where results must be the same bits on machines
@@ -67,6 +69,9 @@ impl<'a> Workers<'a> {
         space: impl Fn() -> S + Sync,
         work: impl Fn(&mut S, T) + Sync,
     ) -> Result<()> {
+        if self.told_to_stop() {
+            return Err(Error::interrupted());
+        }
         let threads = self.threads.min(items.len());
         if threads <= 1 {
             return self.alone(items, space, work);
@@ -134,17 +139,22 @@ impl<'a> Workers<'a> {
 
     fn alone<T, S>(&mut self, items: Vec<T>, space: impl Fn() -> S, work: impl Fn(&mut S, T)) -> Result<()> {
         let mut space = space();
-        let mut asked = std::time::Instant::now();
         for item in items {
             work(&mut space, item);
-            if asked.elapsed() >= ASK_EVERY {
-                if !(self.keep_going)() {
-                    return Err(Error::interrupted());
-                }
-                asked = std::time::Instant::now();
+            if self.told_to_stop() {
+                return Err(Error::interrupted());
             }
         }
         Ok(())
+    }
+
+    /// Asks the caller, if it is time to.
+    fn told_to_stop(&mut self) -> bool {
+        if self.asked.elapsed() < ASK_EVERY {
+            return false;
+        }
+        self.asked = std::time::Instant::now();
+        !(self.keep_going)()
     }
 }
 
@@ -178,6 +188,20 @@ mod tests {
                 })
                 .unwrap();
             assert_eq!(count.into_inner(), 499_500);
+        }
+    }
+
+    #[test]
+    fn a_caller_is_asked_between_loops_that_are_short() {
+        for threads in [1, 2] {
+            let mut never = || false;
+            let mut workers = Workers::new(threads, &mut never);
+            let begun = std::time::Instant::now();
+            let mut short =
+                || workers.for_each(vec![(); 2], |()| std::thread::sleep(Duration::from_millis(1)));
+            while short().is_ok() {
+                assert!(begun.elapsed() < Duration::from_millis(200));
+            }
         }
     }
 
