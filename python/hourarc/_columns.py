@@ -6,13 +6,15 @@ sees one kind of array only, and a scalar takes the same path as an array (and g
 
 from __future__ import annotations
 
+import os
 import sys
 from typing import Any
 
 import numpy as np
-from numpy.typing import NDArray
+from numpy.typing import DTypeLike, NDArray
 
-from .errors import InvalidArgument, WrongType
+from . import _engine
+from .errors import InvalidArgument, UnknownName, WrongType
 
 Floats = NDArray[np.float64]
 
@@ -88,6 +90,26 @@ def broadcast_flat(values: dict[str, tuple[Any, str]], where: str) -> tuple[tupl
     return shape, [np.ascontiguousarray(np.broadcast_to(array, shape)).reshape(-1) for array in made]
 
 
+def writable(array: Any, where: str, shape: tuple[int, ...], kind: DTypeLike) -> NDArray[Any]:
+    """`array` if it can be filled in place as a result of that shape and type; a memory map can."""
+    allowed = f"a writable C-contiguous {np.dtype(kind)} array of shape {shape}"
+    if array is None:
+        raise InvalidArgument.of(where, "nothing", allowed)
+    if not isinstance(array, np.ndarray):
+        raise WrongType.of(where, array, allowed)
+    if array.shape != shape or array.dtype != np.dtype(kind):
+        raise InvalidArgument.of(where, f"{array.dtype} of shape {array.shape}", allowed)
+    wrong = {
+        "a read-only array": array.flags.writeable,
+        "an array that is not C-contiguous": array.flags.c_contiguous,
+        "an array that is not aligned": array.flags.aligned,
+    }
+    for what, good in wrong.items():
+        if not good:
+            raise InvalidArgument.of(where, what, allowed)
+    return array
+
+
 def read_only(array: NDArray[Any]) -> NDArray[Any]:
     """A view of `array` that cannot be written through."""
     view = array.view()
@@ -95,12 +117,27 @@ def read_only(array: NDArray[Any]) -> NDArray[Any]:
     return view
 
 
-def thread_count(threads: int | None) -> int:
-    """`threads` as the engine takes it: 0 for all cores."""
+def workers(threads: int | None) -> tuple[int, str]:
+    """How the engine is to work: on so many threads (0 for all cores), and with which instruction set."""
     if threads is None:
-        return 0
+        return 0, instruction_set()
     if isinstance(threads, bool) or not isinstance(threads, (int, np.integer)):
         raise WrongType.of("threads", threads, "None (all cores) or a whole number from 1")
     if not 1 <= threads <= 4096:
         raise InvalidArgument.of("threads", threads, "None (all cores) or a whole number from 1 to 4096")
-    return int(threads)
+    return int(threads), instruction_set()
+
+
+def instruction_set() -> str:
+    """The instruction set that the inner loops are run with.
+
+    The widest of this processor, unless the environment variable ``HOURARC_ISA`` names another: so that
+    machines of different kinds give the same bits. It is read at every call.
+    """
+    available = _engine.instruction_sets()
+    word = os.environ.get("HOURARC_ISA", "")
+    if not word:
+        return available[-1]
+    if word not in available:
+        raise UnknownName.among("environment variable HOURARC_ISA, on this processor", word, available)
+    return word

@@ -1,10 +1,11 @@
 """The compiled engine, as the package sees it. Not public: use the nouns and verbs of `hourarc`.
 
 Arrays are one-dimensional and C-contiguous unless said. Instants are int64 nanoseconds of UTC since 1970,
-a datetime64[ns] viewed; NaT is the least int64. `threads` 0 means all cores. A test holds this file and the
-binary together.
+a datetime64[ns] viewed; NaT is the least int64. `workers` is a number of threads, 0 for all cores, and one of
+`instruction_sets()`. A test holds this file and the binary together.
 """
 
+from collections.abc import Callable
 from typing import Any, final
 
 import numpy as np
@@ -26,7 +27,8 @@ __all__ = [
     "debug_build",
     "event_status_words",
     "first_bad_status",
-    "instruction_set",
+    "grid_quantities",
+    "instruction_sets",
     "place",
     "position_angle",
     "precession_nutation",
@@ -37,6 +39,7 @@ __all__ = [
     "sidereal_time",
     "status_words",
     "version",
+    "visibility_grid",
     "windows",
 ]
 
@@ -112,7 +115,7 @@ def place(
     columns: dict[str, _Floats],
     status: _Bytes,
     pairwise: bool,
-    threads: int,
+    workers: tuple[int, str],
 ) -> None: ...
 def rise_transit_set(
     site: Site,
@@ -121,7 +124,7 @@ def rise_transit_set(
     start_ns: int,
     stop_ns: int,
     altitude_deg: float,
-    threads: int,
+    workers: tuple[int, str],
 ) -> dict[str, NDArray[Any]]: ...
 def almanac(site: Site, orientation: Orientation, first_mjd: int, nights: int) -> dict[str, NDArray[Any]]: ...
 def windows(
@@ -131,8 +134,20 @@ def windows(
     start_ns: int,
     stop_ns: int,
     limits: dict[str, float | _Floats | str],
-    threads: int,
+    workers: tuple[int, str],
 ) -> dict[str, NDArray[Any]]: ...
+def visibility_grid(
+    site: Site,
+    targets: Catalog | Bodies,
+    orientation: Orientation,
+    first_mjd: int,
+    nights: int,
+    limits: dict[str, float | _Floats | str],
+    quantities: dict[str, NDArray[np.float32] | _Floats],
+    progress: Callable[[int], object] | None,
+    workers: tuple[int, str],
+) -> dict[str, NDArray[Any]]: ...
+def grid_quantities() -> list[tuple[str, bool]]: ...
 def rotation_angle(ut1_mjd: _Floats, ut1_fraction: _Floats) -> _Floats: ...
 def sidereal_time(
     ut1_mjd: _Floats, ut1_fraction: _Floats, tt_mjd: _Floats, tt_fraction: _Floats, apparent: bool
@@ -146,4 +161,4 @@ def status_words() -> dict[int, str]: ...
 def event_status_words() -> list[str]: ...
 def body_words() -> list[str]: ...
 def airmass_model_words() -> list[str]: ...
-def instruction_set() -> str: ...
+def instruction_sets() -> list[str]: ...

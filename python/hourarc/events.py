@@ -10,7 +10,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from . import _engine
-from ._columns import Floats, scalar, thread_count
+from ._columns import Floats, scalar, workers
 from .errors import InvalidArgument
 from .orientation import Orientation, as_orientation
 from .results import STATUS_WORDS, Coded, ColumnResult, Ragged, words
@@ -152,6 +152,6 @@ def rise_transit_set(
     earth = as_orientation(orientation)
     earth.check(np.array([first, last]), "start, stop")
     made = _engine.rise_transit_set(
-        here._handle, rows._handle, earth._handle, first, last, threshold, thread_count(threads)
+        here._handle, rows._handle, earth._handle, first, last, threshold, workers(threads)
     )
     return Events(**{**made, "time": from_nanoseconds(made["time"])}, name=rows.name)

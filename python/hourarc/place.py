@@ -9,7 +9,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from . import _engine
-from ._columns import Floats, thread_count
+from ._columns import Floats, workers, writable
 from .errors import InvalidArgument, MissingColumn, UnknownName, WrongType
 from .orientation import Orientation, as_orientation
 from .results import STATUS_WORDS, Coded, ColumnResult, words
@@ -190,7 +190,7 @@ def place(
         flat,
         status.reshape(-1),
         bool(pairwise),
-        thread_count(threads),
+        workers(threads),
     )
     return Places(
         arrays, status, from_nanoseconds(nanoseconds).reshape(time_shape), rows.name, bool(pairwise)
@@ -239,22 +239,7 @@ def _outputs(
             raise InvalidArgument.of(
                 "place: out", f"{key}, which is not computed", f"columns {', '.join(wanted)}"
             )
-    arrays = {key: _writable(given.get(key), key, shape, np.dtype(np.float64)) for key in wanted}
+    arrays = {key: writable(given.get(key), f"place: out[{key!r}]", shape, np.float64) for key in wanted}
     if "status" not in given:
         return arrays, np.empty(shape, dtype=np.uint8)
-    return arrays, _writable(given["status"], "status", shape, np.dtype(np.uint8))
-
-
-def _writable(array: Any, name: str, shape: tuple[int, ...], dtype: np.dtype[Any]) -> NDArray[Any]:
-    allowed = f"a writable C-contiguous {dtype} array of shape {shape}"
-    where = f"place: out[{name!r}]"
-    if array is None:
-        raise InvalidArgument.of(where, "nothing", allowed)
-    if not isinstance(array, np.ndarray):
-        raise WrongType.of(where, array, allowed)
-    if array.shape != shape or array.dtype != dtype:
-        raise InvalidArgument.of(where, f"{array.dtype} of shape {array.shape}", allowed)
-    if not array.flags.c_contiguous or not array.flags.writeable:
-        given = "a read-only array" if not array.flags.writeable else "an array that is not C-contiguous"
-        raise InvalidArgument.of(where, given, allowed)
-    return array
+    return arrays, writable(given["status"], "place: out['status']", shape, np.uint8)

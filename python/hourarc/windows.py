@@ -10,7 +10,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from . import _engine
-from ._columns import Floats, thread_count
+from ._columns import Floats, workers
 from .errors import WrongType
 from .limits import Limits
 from .orientation import Orientation, as_orientation
@@ -204,7 +204,7 @@ def windows(
         first,
         last,
         allowed.for_engine(len(rows)),
-        thread_count(threads),
+        workers(threads),
     )
     times = {key: from_nanoseconds(made[key]) for key in ("start", "stop", "best_time")}
     return Windows(**{**made, **times}, name=rows.name)

@@ -1,10 +1,10 @@
 //! Columns of numbers from and to numpy.
 
-use hourarc_core::error::Status;
-use numpy::{Element, IntoPyArray, PyArray1, PyReadonlyArray1};
+use hourarc_core::error::{Error, Status};
+use numpy::{Element, IntoPyArray, PyArray1, PyArrayMethods, PyReadonlyArray1, PyReadwriteArray1};
 use pyo3::prelude::*;
 
-use crate::errors::unequal;
+use crate::errors::{raise, unequal};
 
 /// A column as it arrives.
 pub type Floats<'py> = PyReadonlyArray1<'py, f64>;
@@ -20,6 +20,21 @@ pub fn equal<'a, const N: usize>(columns: [(&str, &'a Floats<'_>); N]) -> PyResu
         }
     }
     Ok(slices)
+}
+
+/// An array of the caller's to be filled. It may be in use: another call may fill it at this moment.
+pub fn writable<'py, T: Element>(
+    array: &Bound<'py, PyAny>,
+    name: &str,
+) -> PyResult<PyReadwriteArray1<'py, T>> {
+    let array = array.cast::<PyArray1<T>>()?;
+    array.try_readwrite().map_err(|error| {
+        raise(Error::invalid(
+            name,
+            format!("an array that cannot be filled ({error})"),
+            "an array of its own",
+        ))
+    })
 }
 
 /// A column as it leaves: the vector's own memory.

@@ -11,7 +11,7 @@ use crate::arrays::column;
 use crate::orientation::Orientation;
 use crate::site::Site;
 use crate::targets::Targets;
-use crate::workers;
+use crate::workers::{self, Workers};
 
 /// Rises, transits and sets of every target over [start, stop), as columns by name.
 #[pyfunction]
@@ -23,12 +23,12 @@ pub fn rise_transit_set<'py>(
     start_ns: i64,
     stop_ns: i64,
     altitude_deg: f64,
-    threads: usize,
+    workers: Workers,
 ) -> PyResult<Bound<'py, PyDict>> {
     let (start, stop) = (Utc::from_nanoseconds(start_ns), Utc::from_nanoseconds(stop_ns));
     let ephemeris = targets.ephemeris();
     let (observer, rows) = (site.observer(orientation, &ephemeris), targets.rows());
-    let table = workers::run(py, threads, |workers| {
+    let table = workers::run(py, &workers, |workers| {
         let track = track_for(&observer, start, stop)?;
         let mut days = Days::new(observer, &track, start, stop)?;
         event_table(&mut days, &rows, altitude_deg * RADIANS_PER_DEGREE, workers)

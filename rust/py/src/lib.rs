@@ -12,6 +12,7 @@ mod geometry;
 mod limits;
 mod orientation;
 mod place;
+mod season;
 mod site;
 mod targets;
 mod windows;
@@ -37,6 +38,8 @@ mod _engine {
     #[pymodule_export]
     use crate::place::place;
     #[pymodule_export]
+    use crate::season::{grid_quantities, visibility_grid};
+    #[pymodule_export]
     use crate::site::Site;
     #[pymodule_export]
     use crate::targets::{Bodies, Catalog};
@@ -44,7 +47,7 @@ mod _engine {
     use crate::windows::windows;
     #[pymodule_export]
     use crate::words::{
-        airmass_model_words, body_words, event_status_words, instruction_set, reason_words, status_words,
+        airmass_model_words, body_words, event_status_words, instruction_sets, reason_words, status_words,
     };
 
     #[pymodule_init]

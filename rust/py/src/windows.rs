@@ -11,11 +11,11 @@ use crate::limits::limits;
 use crate::orientation::Orientation;
 use crate::site::Site;
 use crate::targets::Targets;
-use crate::workers;
+use crate::workers::{self, Workers};
 
 /// The windows of every target over [start, stop), as columns by name.
 #[pyfunction]
-#[pyo3(signature = (site, targets, orientation, start_ns, stop_ns, limits, threads))]
+#[pyo3(signature = (site, targets, orientation, start_ns, stop_ns, limits, workers))]
 pub fn windows<'py>(
     py: Python<'py>,
     site: &Site,
@@ -24,12 +24,12 @@ pub fn windows<'py>(
     start_ns: i64,
     stop_ns: i64,
     #[pyo3(from_py_with = limits)] limits: hourarc_core::windows::Limits,
-    threads: usize,
+    workers: Workers,
 ) -> PyResult<Bound<'py, PyDict>> {
     let (start, stop) = (Utc::from_nanoseconds(start_ns), Utc::from_nanoseconds(stop_ns));
     let ephemeris = targets.ephemeris();
     let (observer, rows) = (site.observer(orientation, &ephemeris), targets.rows());
-    let table = workers::run(py, threads, |workers| {
+    let table = workers::run(py, &workers, |workers| {
         let track = track_for(&observer, start, stop)?;
         let mut days = Days::new(observer, &track, start, stop)?;
         window_table(&mut days, &rows, &limits, workers)

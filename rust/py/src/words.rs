@@ -49,8 +49,8 @@ pub fn airmass_model_words() -> Vec<&'static str> {
     AirmassModel::ALL.iter().map(|model| model.word()).collect()
 }
 
-/// The instruction set that this machine runs the inner loops with.
+/// The instruction sets that the inner loops can be run with on this processor, the widest last.
 #[pyfunction]
-pub fn instruction_set() -> &'static str {
-    Isa::best().word()
+pub fn instruction_sets() -> Vec<&'static str> {
+    Isa::available().map(Isa::word).collect()
 }
