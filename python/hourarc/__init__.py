@@ -15,6 +15,7 @@ and is never the interlock. Not for navigation, aviation, or legal time.
 from __future__ import annotations
 
 from . import _engine, earth, errors
+from ._columns import instruction_set
 from .almanac import Almanac, almanac
 from .earth import Orientation
 from .errors import HourarcError, HourarcWarning
@@ -23,6 +24,8 @@ from .geometry import position_angle, separation
 from .limits import LIMITS, Limits
 from .place import PLACE_COLUMNS, Places, place
 from .results import STATUS_WORDS
+from .season import GRID_QUANTITIES, Grid, visibility_grid
+from .season_summary import SeasonSummary
 from .site import Site
 from .targets import Bodies, Catalog
 from .windows import REASON_WORDS, Window, Windows, windows
@@ -30,6 +33,7 @@ from .windows import REASON_WORDS, Window, Windows, windows
 __version__: str = _engine.version
 
 __all__ = [
+    "GRID_QUANTITIES",
     "LIMITS",
     "PLACE_COLUMNS",
     "REASON_WORDS",
@@ -39,11 +43,13 @@ __all__ = [
     "Catalog",
     "Event",
     "Events",
+    "Grid",
     "HourarcError",
     "HourarcWarning",
     "Limits",
     "Orientation",
     "Places",
+    "SeasonSummary",
     "Site",
     "Window",
     "Windows",
@@ -51,10 +57,12 @@ __all__ = [
     "almanac",
     "earth",
     "errors",
+    "instruction_set",
     "place",
     "position_angle",
     "rise_transit_set",
     "separation",
+    "visibility_grid",
     "windows",
 ]
 

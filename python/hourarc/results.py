@@ -65,6 +65,17 @@ COLUMNS: Mapping[str, Column] = {
     "blocked_by": Column("", "meta.code", "limit that leaves nothing"),
     "window_count": Column("", "meta.number", "number of windows"),
     "hours": Column("h", "time.duration", "sum of the windows"),
+    # season
+    "transit": Column("", "time.epoch", "upper culmination nearest to the middle of the night, UTC"),
+    "moon_separation_min": Column(
+        "deg", "pos.angDistance;stat.min", "least angle to the centre of the Moon within the windows"
+    ),
+    "first_night": Column("", "time.epoch;stat.min", "first useful night"),
+    "last_night": Column("", "time.epoch;stat.max", "last useful night"),
+    "useful_nights": Column("", "meta.number", "number of useful nights"),
+    "longest_gap": Column("", "meta.number", "most nights in a row between them that are not useful"),
+    "night_hours": Column("h", "time.duration", "hours of all targets together"),
+    "useful_targets": Column("", "meta.number", "number of targets to which the night is useful"),
     # almanac
     "sunset": Column("", "time.epoch", "sunset, UTC"),
     "dusk_civil": Column("", "time.epoch", "Sun at -6 degrees, evening, UTC"),

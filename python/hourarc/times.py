@@ -92,6 +92,15 @@ def from_nanoseconds(nanoseconds: Nanoseconds) -> NDArray[np.datetime64]:
     return nanoseconds.view("datetime64[ns]")
 
 
+def from_mjd(mjd: NDArray[np.float64]) -> NDArray[np.datetime64]:
+    """Modified Julian Dates UTC as `datetime64[ns]`, to the microsecond that one double holds; NaN is NaT."""
+    missing = np.isnan(mjd)
+    since_1970 = np.where(missing, 0.0, mjd - _UNIX_EPOCH_MJD)
+    times = np.rint(since_1970 * 86_400e6).astype(np.int64).astype("datetime64[us]").astype("datetime64[ns]")
+    times[missing] = np.datetime64("NaT")
+    return times
+
+
 def span(start: Any, stop: Any) -> tuple[int, int]:
     """The two ends of a half-open span [start, stop) as nanoseconds; it must not be empty."""
     first, last = instant(start, "start"), instant(stop, "stop")

@@ -109,6 +109,13 @@ GATES = {
         "ms",
         500,
     ),
+    "grid_hours": Gate(
+        "hours of a target's night in a grid, stars grazing and circumpolar, polar day and night among them",
+        "the sum of the exact windows of that night",
+        1.0,
+        "s",
+        100_000,
+    ),
     "refraction": Gate(
         "refraction to zenith distance 80°",
         "ray trace of Hohenkerk & Sinclair (1985)",
