@@ -43,9 +43,9 @@ fn catalog(rows: usize) -> Catalog {
     .expect("columns of one length")
 }
 
-/// Seconds of the better of three runs.
+/// Seconds of the best of five runs.
 fn best(mut run: impl FnMut()) -> f64 {
-    (0..3)
+    (0..5)
         .map(|_| {
             let begun = Instant::now();
             run();

@@ -63,7 +63,7 @@ struct Candidates {
     star: [u16; MOST],
     kind: [EventKind; MOST],
     /// Coefficients of the star's direction over the day.
-    direction: [[[f64; MOST]; 3]; 3],
+    direction: [[f64; MOST]; 9],
     /// 1 for a transit, 0 for a crossing.
     transit: [f64; MOST],
     /// Fraction of the day: the guess, then the event.
@@ -91,7 +91,7 @@ impl Default for BatchSpace {
                 count: 0,
                 star: [0; MOST],
                 kind: [EventKind::Rise; MOST],
-                direction: [[row; 3]; 3],
+                direction: [row; 9],
                 transit: row,
                 at: row,
                 step: row,
@@ -344,9 +344,9 @@ impl Candidates {
         }
         for axis in 0..3 {
             let [a, b, c] = [nodes[0][axis][star], nodes[1][axis][star], nodes[2][axis][star]];
-            self.direction[0][axis][i] = a;
-            self.direction[1][axis][i] = (-3.0 * a + 4.0 * b) - c;
-            self.direction[2][axis][i] = 2.0 * ((a + c) - 2.0 * b);
+            self.direction[axis][i] = a;
+            self.direction[3 + axis][i] = (-3.0 * a + 4.0 * b) - c;
+            self.direction[6 + axis][i] = 2.0 * ((a + c) - 2.0 * b);
         }
         self.star[i] = star as u16;
         self.kind[i] = kind;
@@ -375,50 +375,55 @@ impl Turning {
         }
     }
 
-    /// Direction on the horizon and its rate a day, as `StarArc::local_and_rate`.
+    /// Direction on the horizon and its rate a day, as `StarArc::local_and_rate`. Written out: a closure
+    /// over an array is a call to LLVM until after it has given up on whole registers.
     #[inline(always)]
-    fn local_and_rate<A: Arithmetic>(&self, direction: [[f64; 3]; 3], at: f64) -> ([f64; 3], [f64; 3]) {
-        let [first, linear, square] = direction;
-        let cirs =
-            [0, 1, 2].map(|k| A::multiply_add(at, A::multiply_add(at, square[k], linear[k]), first[k]));
+    fn local_and_rate<A: Arithmetic>(&self, path: &Path, at: f64) -> ([f64; 3], [f64; 3]) {
+        let [x0, y0, z0, x1, y1, z1, x2, y2, z2] = *path;
+        let along = |c0: f64, c1: f64, c2: f64| A::multiply_add(at, A::multiply_add(at, c2, c1), c0);
+        let (x, y, z) = (along(x0, x1, x2), along(y0, y1, y2), along(z0, z1, z2));
+        let twice = 2.0 * at;
+        let dx = A::multiply_add(twice, x2, x1);
+        let dy = A::multiply_add(twice, y2, y1);
+        let dz = A::multiply_add(twice, z2, z1);
         let shape = at * (at - 0.5) * (at - 1.0);
         let (bx, by) = (shape * self.bend[0], shape * self.bend[1]);
-        let cirs = [
-            A::multiply_add(-bx, cirs[2], cirs[0]),
-            A::multiply_add(-by, cirs[2], cirs[1]),
-            A::multiply_add(bx, cirs[0], A::multiply_add(by, cirs[1], cirs[2])),
-        ];
-        let drift = [0, 1, 2].map(|k| A::multiply_add(2.0 * at, square[k], linear[k]));
-        let angle =
-            A::multiply_add(at, A::multiply_add(at, self.rotation[2], self.rotation[1]), self.rotation[0]);
-        let spin = A::multiply_add(2.0 * at, self.rotation[2], self.rotation[1]);
+        let (x, y, z) = (
+            A::multiply_add(-bx, z, x),
+            A::multiply_add(-by, z, y),
+            A::multiply_add(bx, x, A::multiply_add(by, y, z)),
+        );
+        let angle = along(self.rotation[0], self.rotation[1], self.rotation[2]);
+        let spin = A::multiply_add(twice, self.rotation[2], self.rotation[1]);
         let (sin, cos) = sin_cos::<A>(angle);
-        let turn = |v: [f64; 3]| {
-            [A::multiply_add(cos, v[0], sin * v[1]), A::multiply_add(cos, v[1], -sin * v[0]), v[2]]
+        let (u, v) = (A::multiply_add(cos, x, sin * y), A::multiply_add(cos, y, -sin * x));
+        let (du, dv) = (A::multiply_add(cos, dx, sin * dy), A::multiply_add(cos, dy, -sin * dx));
+        let (du, dv) = (A::multiply_add(spin, v, du), A::multiply_add(-spin, u, dv));
+        let h = &self.horizon;
+        let row = |i: usize| {
+            let a = along(h[0][i][0], h[1][i][0], h[2][i][0]);
+            let b = along(h[0][i][1], h[1][i][1], h[2][i][1]);
+            let c = along(h[0][i][2], h[1][i][2], h[2][i][2]);
+            let value = A::multiply_add(a, u, A::multiply_add(b, v, c * z));
+            let rate = A::multiply_add(a, du, A::multiply_add(b, dv, c * dz));
+            (value, rate)
         };
-        let turned = turn(cirs);
-        let rate = turn(drift);
-        let rate =
-            [A::multiply_add(spin, turned[1], rate[0]), A::multiply_add(-spin, turned[0], rate[1]), rate[2]];
-        let mut local = [0.0; 3];
-        let mut local_rate = [0.0; 3];
-        for row in 0..3 {
-            for column in 0..3 {
-                let element = A::multiply_add(
-                    at,
-                    A::multiply_add(at, self.horizon[2][row][column], self.horizon[1][row][column]),
-                    self.horizon[0][row][column],
-                );
-                local[row] = A::multiply_add(element, turned[column], local[row]);
-                local_rate[row] = A::multiply_add(element, rate[column], local_rate[row]);
-            }
-        }
-        let shrink = 1.0 - self.aberration * local[1];
-        let shrink_rate = -self.aberration * local_rate[1];
-        let rate = [0, 1, 2].map(|k| A::multiply_add(local_rate[k], shrink, local[k] * shrink_rate));
-        ([local[0] * shrink, A::multiply_add(local[1], shrink, self.aberration), local[2] * shrink], rate)
+        let ((north, dnorth), (east, deast), (zenith, dzenith)) = (row(0), row(1), row(2));
+        let shrink = 1.0 - self.aberration * east;
+        let dshrink = -self.aberration * deast;
+        (
+            [north * shrink, A::multiply_add(east, shrink, self.aberration), zenith * shrink],
+            [
+                A::multiply_add(dnorth, shrink, north * dshrink),
+                A::multiply_add(deast, shrink, east * dshrink),
+                A::multiply_add(dzenith, shrink, zenith * dshrink),
+            ],
+        )
     }
 }
+
+/// Coefficients of a star's direction over a day: three constant ones, three linear, three quadratic.
+type Path = [f64; 9];
 
 /// Two steps of Newton's method.
 struct Solve<'a, 'b> {
@@ -435,14 +440,13 @@ impl Kernel for Solve<'_, '_> {
         let turning = Turning::of(self.arc);
         let Candidates { count, direction, transit, at, step, .. } = self.candidates;
         let count = (*count).min(MOST);
-        let direction = direction_columns(direction, count);
         let (transit, at, step) = (&transit[..count], &mut at[..count], &mut step[..count]);
         for i in 0..count {
-            let path = direction_at(&direction, i);
+            let path = path_of(direction, i);
             let mut fraction = at[i];
             let mut last = 0.0;
             for _ in 0..2 {
-                let (local, rate) = turning.local_and_rate::<A>(path, fraction);
+                let (local, rate) = turning.local_and_rate::<A>(&path, fraction);
                 // East for a transit, altitude for a crossing.
                 let crossing = 1.0 - transit[i];
                 let value = A::multiply_add(transit[i], local[1], crossing * (local[2] - self.sin_threshold));
@@ -457,13 +461,9 @@ impl Kernel for Solve<'_, '_> {
 }
 
 #[inline(always)]
-fn direction_columns(direction: &[[[f64; MOST]; 3]; 3], count: usize) -> [[&[f64]; 3]; 3] {
-    [0, 1, 2].map(|power| [0, 1, 2].map(|axis| &direction[power][axis][..count]))
-}
-
-#[inline(always)]
-fn direction_at(direction: &[[&[f64]; 3]; 3], i: usize) -> [[f64; 3]; 3] {
-    [0, 1, 2].map(|power| [0, 1, 2].map(|axis| direction[power][axis][i]))
+fn path_of(direction: &[[f64; MOST]; 9], i: usize) -> Path {
+    let [a, b, c, d, e, f, g, h, k] = direction;
+    [a[i], b[i], c[i], d[i], e[i], f[i], g[i], h[i], k[i]]
 }
 
 /// Azimuth, observed altitude and errors of the events.
@@ -486,7 +486,6 @@ impl Kernel for Describe<'_, '_> {
             count, direction, transit, at, azimuth, altitude, error_s, scatter_s, doubtful, ..
         } = self.candidates;
         let count = (*count).min(MOST);
-        let direction = direction_columns(direction, count);
         let (transit, at) = (&transit[..count], &at[..count]);
         let (azimuth, altitude) = (&mut azimuth[..count], &mut altitude[..count]);
         let (error_s, scatter_s, doubtful) =
@@ -495,7 +494,7 @@ impl Kernel for Describe<'_, '_> {
         let turn = EARTH_ROTATION_RAD_PER_S * SECONDS_PER_DAY;
         let always = self.arc.ut1_error_s + ROUNDING_S;
         for i in 0..count {
-            let (local, rate) = turning.local_and_rate::<A>(direction_at(&direction, i), at[i]);
+            let (local, rate) = turning.local_and_rate::<A>(&path_of(direction, i), at[i]);
             let cos_altitude = A::multiply_add(local[0], local[0], local[1] * local[1]).sqrt();
             azimuth[i] = wrap_positive::<A>(atan2::<A>(local[1], local[0]));
             altitude[i] = atan2::<A>(local[2], cos_altitude);
