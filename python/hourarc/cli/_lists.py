@@ -2,8 +2,9 @@
 
 from __future__ import annotations
 
+import contextlib
 import sys
-from collections.abc import Sequence
+from collections.abc import Callable, Iterator, Sequence
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
@@ -100,6 +101,16 @@ def write_list(
         if len(targets.rejected) or rejected_path.exists():
             write_rejected(targets.rejected, rejected_path, record, files)
         return files.commit()
+
+
+@contextlib.contextmanager
+def progress(total: int, quiet: bool, least: int) -> Iterator[Callable[[int], None]]:
+    """A bar on a terminal, nothing in a pipe, nor where there is less to do than `least`."""
+    if quiet or not sys.stderr.isatty() or total < least:
+        yield lambda _: None
+        return
+    with click.progressbar(length=total, label="planning", file=sys.stderr) as bar:
+        yield bar.update
 
 
 def tell(report: str, output: Path | None, written: list[Path]) -> None:

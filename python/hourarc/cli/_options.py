@@ -107,7 +107,30 @@ class BodyNames(_Names):
         return names
 
 
-NIGHT, INSTANT, BODY_NAMES = Night(), Instant(), BodyNames()
+class Quantities(_Names):
+    """Quantities of a season: hours,start,stop."""
+
+    name = "names"
+
+    def convert(
+        self, value: Any, param: click.Parameter | None, ctx: click.Context | None
+    ) -> tuple[str, ...]:
+        if isinstance(value, tuple):
+            return value
+        from ..errors import UnknownName
+        from ..season import GRID_QUANTITIES
+
+        names = tuple(str(value).replace(",", " ").lower().split())
+        if not names:
+            self.fail(f"no name is given; allowed {', '.join(GRID_QUANTITIES)}", param, ctx)
+        if doubled := next((name for name in names if names.count(name) > 1), None):
+            self.fail(f"{doubled} is given twice", param, ctx)
+        if unknown := next((name for name in names if name not in GRID_QUANTITIES), None):
+            self.fail(str(UnknownName.among("quantity", unknown, GRID_QUANTITIES)), param, ctx)
+        return names
+
+
+NIGHT, INSTANT, BODY_NAMES, QUANTITIES = Night(), Instant(), BodyNames(), Quantities()
 
 plan = click.argument("plan", type=FILE, metavar="PLAN.toml")
 targets = click.argument("targets", type=FILE, required=False, metavar="[TARGETS]")

@@ -2,13 +2,10 @@
 
 from __future__ import annotations
 
-import contextlib
 import datetime
-import sys
 import warnings
-from collections.abc import Iterator, Sequence
+from collections.abc import Sequence
 from pathlib import Path
-from typing import Any
 
 from . import _lists
 
@@ -53,7 +50,7 @@ def plan_night(
     start, stop = almanac.start[0], almanac.stop[0]
     limits = plan.limits(targets)
     found, blocked, status, words = [], [], [], []
-    with _progress(len(targets), quiet) as step:
+    with _lists.progress(len(targets), quiet, BLOCK + 1) as step:
         for first in range(0, len(targets), BLOCK):
             last = min(first + BLOCK, len(targets))
             with warnings.catch_warnings():
@@ -85,15 +82,3 @@ def plan_night(
         report = night_report(site, night, almanac, windows, without, targets, earth)
         _lists.tell(report, output, written)
     return _lists.tell_rejected(targets, written)
-
-
-@contextlib.contextmanager
-def _progress(total: int, quiet: bool) -> Iterator[Any]:
-    """A bar on a terminal, nothing in a pipe."""
-    import click
-
-    if quiet or not sys.stderr.isatty() or total <= BLOCK:
-        yield lambda _: None
-        return
-    with click.progressbar(length=total, label="planning", file=sys.stderr) as bar:
-        yield bar.update

@@ -81,6 +81,17 @@ def blocked_table(windows: Any, targets: Targets, first: int = 0) -> pa.Table:
     )
 
 
+def season_table(summary: Any, targets: Targets) -> pa.Table:
+    """A row a target: its first and last useful night, how many, their hours. No target is a bad row."""
+    import pyarrow as pa
+
+    table = summary.to_arrow()
+    names = ("first_night", "last_night", "useful_nights", "longest_gap", "hours", "status")
+    return _table(
+        {"row": pa.array(targets.row), "name": targets.name} | {name: table[name] for name in names}
+    )
+
+
 def places_table(places: Any, targets: Targets) -> pa.Table:
     """A row a target with its place, every column of `place`. Rows without a place go to `targets.rejected`.
 
