@@ -14,7 +14,7 @@ use hourarc_core::grid::{
 use hourarc_core::refraction::{AirmassModel, Atmosphere, Refraction};
 use hourarc_core::site::Site;
 use hourarc_core::time::{LeapSeconds, Utc};
-use hourarc_core::windows::{Column, Limits};
+use hourarc_core::windows::{Column, Limits, SkyModel};
 use std::time::Instant;
 
 struct Random(u64);
@@ -95,7 +95,7 @@ fn main() {
             let seconds = best(|| {
                 let columns =
                     vec![(PlaceColumn::AltitudeDeg, &mut a[..]), (PlaceColumn::AzimuthDeg, &mut b[..])];
-                let out = PlaceColumns { columns, status: &mut status };
+                let out = PlaceColumns { columns, sky_model: SkyModel::default(), status: &mut status };
                 place(&observer, &targets, when, shape, out, &mut Workers::new(threads, &mut go))
                     .expect("places");
             });
@@ -130,7 +130,8 @@ fn main() {
         }
         for (name, limits) in [("windows", &limits), ("windows with the Moon", &with_moon)] {
             let seconds = best(|| {
-                let table = window_table(&mut days, &targets, limits, &mut Workers::new(threads, &mut go));
+                let table =
+                    window_table(&mut days, &targets, limits, None, &mut Workers::new(threads, &mut go));
                 assert!(table.expect("windows").start.len() > rows / 4);
             });
             report(name, seconds);

@@ -21,6 +21,8 @@ pub const SECONDS_PER_DAY: f64 = 86_400.0;
 pub const DAYS_PER_JULIAN_CENTURY: f64 = 36_525.0;
 /// Days in a Julian year. Exact (IAU 1976).
 pub const DAYS_PER_JULIAN_YEAR: f64 = 365.25;
+/// Julian Date at which the Modified Julian Date is 0. Exact.
+pub const MJD_ZERO_JD: f64 = 2_400_000.5;
 /// J2000.0 as a Modified Julian Date (JD 2451545.0). Exact.
 pub const J2000_MJD: f64 = 51_544.5;
 /// 1970-01-01, the zero of `datetime64`, as a Modified Julian Date. Exact.

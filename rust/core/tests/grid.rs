@@ -191,7 +191,7 @@ fn hours_are_the_sum_of_the_exact_windows() {
             let mut days = Days::new(observer, &track, start, stop).unwrap();
             let mut go = KEEP_GOING;
             let table =
-                window_table(&mut days, &targets, &case.limits, &mut Workers::new(1, &mut go)).unwrap();
+                window_table(&mut days, &targets, &case.limits, None, &mut Workers::new(1, &mut go)).unwrap();
             for row in 0..targets.len() {
                 let at = night * targets.len() + row;
                 if targets.status(row).is_bad() {

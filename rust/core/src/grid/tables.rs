@@ -6,7 +6,7 @@ use crate::astrometry::{Catalog, Targets};
 use crate::constants::RADIANS_PER_DEGREE;
 use crate::error::{Error, Result, Status};
 use crate::events::{BATCH, BatchSpace, Days, Event, Passage, rise_transit_set, star_events};
-use crate::windows::{LimitedSpan, Limits, TargetWindows, Window, Workspace};
+use crate::windows::{Column, LimitedSpan, Limits, TargetWindows, Window, Workspace};
 
 /// Targets a block: some milliseconds of work for one night.
 const BLOCK: usize = 1024;
@@ -30,6 +30,8 @@ pub struct EventTable {
     pub computed_error_s: Vec<f64>,
     /// Seconds.
     pub horizon_scatter_s: Vec<f64>,
+    /// Whether the event is a grazing that may not happen at all.
+    pub may_not_happen: Vec<bool>,
     /// Codes of [`Passage`], one a target.
     pub passage: Vec<u8>,
     /// Codes of [`Status`], one a target.
@@ -53,6 +55,16 @@ pub struct WindowTable {
     pub best_airmass: Vec<f64>,
     /// When that is, nanoseconds UTC.
     pub best_time: Vec<i64>,
+    /// Error of the computed start, seconds.
+    pub start_error_s: Vec<f64>,
+    /// Error of the computed stop, seconds.
+    pub stop_error_s: Vec<f64>,
+    /// Scatter of the start by refraction, seconds.
+    pub start_scatter_s: Vec<f64>,
+    /// Scatter of the stop by refraction, seconds.
+    pub stop_scatter_s: Vec<f64>,
+    /// Whether an edge is a grazing that may not happen at all.
+    pub may_not_happen: Vec<bool>,
     /// Codes of [`Status`], one a target.
     pub status: Vec<u8>,
     /// Codes of [`crate::windows::Cause`], one a target.
@@ -166,12 +178,14 @@ impl EventTable {
         self.altitude_deg = vec![0.0; rows];
         self.computed_error_s = vec![0.0; rows];
         self.horizon_scatter_s = vec![0.0; rows];
+        self.may_not_happen = vec![false; rows];
         let mut kind = &mut self.kind[..];
         let mut time = &mut self.time[..];
         let mut azimuth = &mut self.azimuth_deg[..];
         let mut altitude = &mut self.altitude_deg[..];
         let mut error = &mut self.computed_error_s[..];
         let mut scatter = &mut self.horizon_scatter_s[..];
+        let mut doubt = &mut self.may_not_happen[..];
         let mut tasks = Vec::with_capacity(blocks.len());
         for block in blocks {
             let n = block.rows.len();
@@ -179,10 +193,11 @@ impl EventTable {
                 &block.rows,
                 cut(&mut kind, n),
                 cut(&mut time, n),
+                cut(&mut doubt, n),
                 [cut(&mut azimuth, n), cut(&mut altitude, n), cut(&mut error, n), cut(&mut scatter, n)],
             ));
         }
-        workers.for_each(tasks, |(events, kind, time, [azimuth, altitude, error, scatter])| {
+        workers.for_each(tasks, |(events, kind, time, doubt, [azimuth, altitude, error, scatter])| {
             for (i, event) in events.iter().enumerate() {
                 kind[i] = event.kind as u8;
                 time[i] = event.time.nanoseconds();
@@ -190,6 +205,7 @@ impl EventTable {
                 altitude[i] = event.altitude / RADIANS_PER_DEGREE;
                 error[i] = event.computed_error_s;
                 scatter[i] = event.horizon_scatter_s;
+                doubt[i] = event.may_not_happen;
             }
         })
     }
@@ -202,7 +218,8 @@ fn cut<'a, T>(rest: &mut &'a mut [T], n: usize) -> &'a mut [T] {
     first
 }
 
-/// Windows of every target over the span.
+/// Windows of every target over the span; `position_error`, radians, is how far each catalogue place may be
+/// off, and goes into the errors.
 ///
 /// # Errors
 /// The caller's wish to stop, limits that do not fit, or a span that the ephemeris does not cover.
@@ -210,10 +227,14 @@ pub fn window_table(
     days: &mut Days<'_>,
     targets: &Targets<'_>,
     limits: &Limits,
+    position_error: Option<Column>,
     workers: &mut Workers<'_>,
 ) -> Result<WindowTable> {
     days.prepare(targets)?;
-    let span = LimitedSpan::new(days, limits, targets.len())?;
+    let mut span = LimitedSpan::new(days, limits, targets.len())?;
+    if let Some(error) = position_error {
+        span = span.with_position_error(error, targets.len())?;
+    }
     let blocks = by_target(
         targets.len(),
         days.arcs.len(),
@@ -229,6 +250,11 @@ pub fn window_table(
             table.stop_reason.push(window.stop_reason as u8);
             table.best_airmass.push(window.best_airmass);
             table.best_time.push(window.best_time.nanoseconds());
+            table.start_error_s.push(window.start_error_s);
+            table.stop_error_s.push(window.stop_error_s);
+            table.start_scatter_s.push(window.start_scatter_s);
+            table.stop_scatter_s.push(window.stop_scatter_s);
+            table.may_not_happen.push(window.may_not_happen);
         }
         for (_, summary) in &block.targets {
             let summary: &TargetWindows = summary;

@@ -4,11 +4,12 @@ use super::intervals::{Interval, IntervalSet};
 use super::limits::kinds::fill_intervals;
 use super::limits::{Column, Keepout, Limits, MoonLightDay, MoonPhaseDay, Nodes, PhaseDay};
 use super::reason::Cause;
-use crate::ephemeris::Body;
+use crate::ephemeris::{Body, Ephemeris};
 use crate::error::{Error, Result, Status};
 use crate::events::{Arc, BODY_NODES, BodyArc, Crossing, DayPath, Days, node_fraction};
 use crate::math::chebyshev::Chebyshev;
 use crate::math::vector::{angle, sub};
+use crate::time::{Instant, Tdb};
 
 /// The edge of a day inside a span: not an edge of any window.
 pub(super) const DAY: u8 = u8::MAX;
@@ -206,11 +207,19 @@ fn illumination<const N: usize>(arc: &Arc<'_>) -> std::result::Result<Chebyshev<
     Ok(Chebyshev::fit(0.0, 1.0, |_| next.next().unwrap_or(f64::NAN)))
 }
 
-/// Illuminated fraction of the Moon's disc from the Earth's centre: (1 + cos i)/2 with the angle i at
-/// the Moon between Sun and Earth (Meeus, *Astronomical Algorithms*, 2nd ed., equation 48.1).
+/// Illuminated fraction of the Moon's disc from the Earth's centre: (1 + cos i)/2 with the phase angle i
+/// (Meeus, *Astronomical Algorithms*, 2nd ed., equation 48.1).
 fn moon_illumination(arc: &Arc<'_>, fraction: f64) -> std::result::Result<f64, Status> {
     let tdb = arc.instant(fraction).to_tt().to_tdb();
-    let at = |body| arc.observer.ephemeris.position(body, tdb);
+    Ok(0.5 * (1.0 + moon_phase_angle(arc.observer.ephemeris, tdb)?.cos()))
+}
+
+/// Angle at the Moon between Sun and Earth, radians, of the centres where they are at one instant: 0 at full Moon.
+///
+/// # Errors
+/// [`Status::OutsideEphemeris`].
+pub fn moon_phase_angle(ephemeris: &Ephemeris, tdb: Instant<Tdb>) -> std::result::Result<f64, Status> {
+    let at = |body| ephemeris.position(body, tdb);
     let (earth, sun, moon) = (at(Body::Earth)?, at(Body::Sun)?, at(Body::Moon)?);
-    Ok(0.5 * (1.0 + angle(sub(sun, moon), sub(earth, moon)).cos()))
+    Ok(angle(sub(sun, moon), sub(earth, moon)))
 }

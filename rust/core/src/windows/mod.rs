@@ -14,6 +14,7 @@ mod slots;
 mod sure;
 mod target;
 
+pub use day::moon_phase_angle;
 pub use explain::{Explanation, LimitExplained, UtcInterval};
 pub use limits::{Column, Limits, MoonAvoidance, MoonLight, Phase, PhaseScale, SkyModel, sky_brightness};
 pub use reason::Cause;

@@ -11,6 +11,7 @@ use crate::math::dispatch::{Arithmetic, Isa, Kernel};
 use crate::math::elementary::{atan2, wrap_positive};
 use crate::math::vector::{Matrix, Vector, rotate};
 use crate::refraction::Refraction;
+use crate::windows::{MoonLight, SkyModel, sky_brightness};
 
 /// Rows a block: what a block touches stays in the second level of the cache.
 pub(in crate::grid) const ROWS: usize = 1024;
@@ -31,6 +32,8 @@ pub(in crate::grid) struct Buffers {
     pub pole: Directions,
     pub moon: Directions,
     pub sun: Directions,
+    /// Sine of the Moon's altitude, and its phase angle, radians.
+    pub moon_light: [Numbers; 2],
     /// Altitudes without air and as observed, radians.
     topocentric: Numbers,
     observed: Numbers,
@@ -46,6 +49,7 @@ impl Buffers {
             pole: none,
             moon: none,
             sun: none,
+            moon_light: [topocentric, observed],
             topocentric,
             observed,
         })
@@ -59,7 +63,8 @@ impl Buffers {
         }
         let latitude = Latitude::new(observer.site.latitude());
         for (column, values) in &mut out.columns {
-            isa.run(WriteColumn { column: *column, buffers: self, latitude, out: values });
+            let sky_model = out.sky_model;
+            isa.run(WriteColumn { column: *column, buffers: self, latitude, sky_model, out: values });
         }
     }
 }
@@ -140,6 +145,7 @@ struct WriteColumn<'a> {
     column: PlaceColumn,
     buffers: &'a Buffers,
     latitude: Latitude,
+    sky_model: SkyModel,
     out: &'a mut [f64],
 }
 
@@ -213,6 +219,18 @@ impl Kernel for WriteColumn<'_> {
             }
             PlaceColumn::SunSeparationDeg => {
                 separation::<A>(&self.buffers.direction, &self.buffers.sun, out);
+            }
+            PlaceColumn::SkyBrightnessMagArcsec2 => {
+                separation::<A>(&self.buffers.direction, &self.buffers.moon, out);
+                let [sin_altitude, phase_angle] = &self.buffers.moon_light;
+                for row in 0..rows {
+                    let moon = MoonLight {
+                        sin_altitude: sin_altitude[row],
+                        separation: out[row] * RADIANS_PER_DEGREE,
+                        phase_angle: phase_angle[row],
+                    };
+                    out[row] = sky_brightness(&self.sky_model, zenith[row], Some(moon));
+                }
             }
         }
     }

@@ -7,6 +7,7 @@ use crate::ephemeris::Body;
 use crate::error::Status;
 use crate::math::dispatch::Isa;
 use crate::math::vector::{Vector, rotate};
+use crate::windows::moon_phase_angle;
 use std::ops::Range;
 
 /// Who looks at what, and with which instructions.
@@ -59,13 +60,19 @@ impl Chain<'_> {
         if out.wants(PlaceColumn::DeclinationDeg) {
             fill(&mut buffers.pole, rows.clone(), sky.intermediate[2]);
         }
-        for (column, body, directions) in [
-            (PlaceColumn::MoonSeparationDeg, Body::Moon, &mut buffers.moon),
-            (PlaceColumn::SunSeparationDeg, Body::Sun, &mut buffers.sun),
-        ] {
-            if out.wants(column) {
-                fill(directions, rows.clone(), self.body(body, sky).unwrap_or([f64::NAN; 3]));
+        let by_moonlight = out.wants(PlaceColumn::SkyBrightnessMagArcsec2);
+        if by_moonlight || out.wants(PlaceColumn::MoonSeparationDeg) {
+            let moon = self.body(Body::Moon, sky).unwrap_or([f64::NAN; 3]);
+            fill(&mut buffers.moon, rows.clone(), moon);
+            if by_moonlight {
+                let [sin_altitude, phase_angle] = &mut buffers.moon_light;
+                sin_altitude[rows.clone()].fill(rotate(&sky.local, moon)[2]);
+                let angle = moon_phase_angle(self.observer.ephemeris, sky.tdb());
+                phase_angle[rows.clone()].fill(angle.unwrap_or(f64::NAN));
             }
+        }
+        if out.wants(PlaceColumn::SunSeparationDeg) {
+            fill(&mut buffers.sun, rows, self.body(Body::Sun, sky).unwrap_or([f64::NAN; 3]));
         }
     }
 

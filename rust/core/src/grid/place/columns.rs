@@ -2,6 +2,7 @@
 
 use crate::error::{Error, Result};
 use crate::refraction::AirmassModel;
+use crate::windows::SkyModel;
 
 /// What can be computed of a place.
 #[derive(Debug, Clone, Copy, PartialEq, Eq)]
@@ -30,6 +31,9 @@ pub enum PlaceColumn {
     /// The same of the parallactic angle, at which an altazimuth telescope's field rotates:
     /// −ω cos φ cos A / cos h.
     ParallacticAngleRateArcsecS,
+    /// Brightness of the sky with the Moon in it, V magnitudes a square arcsecond, by
+    /// [`sky_brightness`](crate::windows::sky_brightness); NaN below the horizon. Twilight is not in it.
+    SkyBrightnessMagArcsec2,
 }
 
 /// The formula behind [`PlaceColumn::Airmass`].
@@ -37,7 +41,7 @@ pub const PLACE_AIRMASS: AirmassModel = AirmassModel::KastenYoung1989;
 
 impl PlaceColumn {
     /// Every column.
-    pub const ALL: [PlaceColumn; 10] = [
+    pub const ALL: [PlaceColumn; 11] = [
         PlaceColumn::AltitudeDeg,
         PlaceColumn::AzimuthDeg,
         PlaceColumn::HourAngleDeg,
@@ -48,6 +52,7 @@ impl PlaceColumn {
         PlaceColumn::SunSeparationDeg,
         PlaceColumn::AzimuthRateArcsecS,
         PlaceColumn::ParallacticAngleRateArcsecS,
+        PlaceColumn::SkyBrightnessMagArcsec2,
     ];
 
     /// The word for this column.
@@ -63,6 +68,7 @@ impl PlaceColumn {
             PlaceColumn::SunSeparationDeg => "sun_separation_deg",
             PlaceColumn::AzimuthRateArcsecS => "azimuth_rate_arcsec_s",
             PlaceColumn::ParallacticAngleRateArcsecS => "parallactic_angle_rate_arcsec_s",
+            PlaceColumn::SkyBrightnessMagArcsec2 => "sky_brightness_mag_arcsec2",
         }
     }
 
@@ -83,6 +89,8 @@ impl PlaceColumn {
 pub struct PlaceColumns<'a> {
     /// Each column once.
     pub columns: Vec<(PlaceColumn, &'a mut [f64])>,
+    /// What the brightness of the sky is computed from.
+    pub sky_model: SkyModel,
     /// [`Status`](crate::error::Status) codes.
     pub status: &'a mut [u8],
 }
@@ -91,6 +99,7 @@ impl<'a> PlaceColumns<'a> {
     /// Whether every column has as many values as there are rows.
     pub(in crate::grid) fn check(&self, rows: usize) -> Result<()> {
         let lengths = self.columns.iter().map(|(column, values)| (column.word(), values.len()));
+        self.sky_model.check()?;
         for (name, length) in lengths.chain([("status", self.status.len())]) {
             if length != rows {
                 return Err(Error::invalid(name, format!("{length} values"), format!("{rows}")));
@@ -122,7 +131,11 @@ impl<'a> PlaceColumns<'a> {
                 ((column, first), (column, rest))
             })
             .unzip();
-        (PlaceColumns { columns, status }, PlaceColumns { columns: rest, status: rest_status })
+        let sky_model = self.sky_model;
+        (
+            PlaceColumns { columns, sky_model, status },
+            PlaceColumns { columns: rest, sky_model, status: rest_status },
+        )
     }
 
     pub(in crate::grid) fn wants(&self, wanted: PlaceColumn) -> bool {

@@ -32,7 +32,11 @@ impl Default for SkyModel {
 }
 
 impl SkyModel {
-    pub(super) fn check(&self) -> Result<()> {
+    /// Checks the parameters against their ranges.
+    ///
+    /// # Errors
+    /// One that is outside its range or no number.
+    pub fn check(&self) -> Result<()> {
         if !(0.01..=2.0).contains(&self.extinction_v) {
             return Err(Error::invalid("sky_extinction_v", self.extinction_v, "0.01 to 2 mag an airmass"));
         }
