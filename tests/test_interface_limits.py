@@ -18,6 +18,7 @@ def test_what_holds_when_nothing_is_said():
     assert limits.to_dict() == {
         "altitude_min_deg": 30.0,
         "airmass_model": "kasten_young_1989",
+        "skyline": True,
         "sun_altitude_max_deg": -18.0,
         "sun_separation_min_deg": 30.0,
     }
@@ -26,6 +27,8 @@ def test_what_holds_when_nothing_is_said():
     assert "altitude_min_deg" in limits and "airmass_max" not in limits and 3 not in limits
     assert limits["airmass_max"] is None
     assert set(limits) == set(limits.to_dict())
+    assert "skyline" not in ha.Limits(skyline=False) and "skyline=False" in repr(ha.Limits(skyline=False))
+    assert "phase_scale" not in limits
 
 
 def test_the_signature_follows_the_declarations():
@@ -37,9 +40,18 @@ def test_the_signature_follows_the_declarations():
     for limit in ha.LIMITS.values():
         assert limit.meaning and limit.allowed()
         assert limit.at_most == "" or limit.at_most in ha.LIMITS
-        # A key says its unit, unless it has none.
-        endings = {"deg": "_deg", "hourangle": "_h", "s": "_s", "": ""}
-        assert limit.key.endswith(endings[limit.unit])
+        assert {*limit.together, *limit.apart} <= set(ha.LIMITS)
+        assert limit.reason == "" or limit.reason in ha.REASON_WORDS
+        # A key says its unit, unless it has none; a Julian Date is said to be one.
+        endings = {"deg": "_deg", "hourangle": "_h", "s": "_s", "deg / s": "_deg_s", "": ""}
+        endings |= {"mag / arcsec2": "_mag_arcsec2", "d": "_jd" if limit.key == "phase_epoch_jd" else "_d"}
+        bare = limit.key == "moon_relaxed_below_deg" or limit.key.endswith(endings[limit.unit])
+        assert bare, limit.key
+    assert {limit.reason for limit in ha.LIMITS.values()} - {""} == set(ha.REASON_WORDS) - {
+        "none",
+        "span",
+        "bad_row",
+    }
 
 
 def test_twilights_by_name():
@@ -62,17 +74,44 @@ def test_an_unknown_key_names_the_nearest():
         ha.Limits()["zzz"]
 
 
-@pytest.mark.parametrize("key", [key for key, limit in ha.LIMITS.items() if not limit.choices])
+#: What must stand beside a limit to make sense.
+BESIDE = {
+    "moon_avoidance_separation_deg": {"moon_avoidance_width_d": 5.0},
+    "moon_avoidance_width_d": {"moon_avoidance_separation_deg": 60.0},
+    "moon_avoidance_dark_deg": {"moon_avoidance_bright_deg": 60.0},
+    "moon_avoidance_bright_deg": {"moon_avoidance_dark_deg": 10.0},
+    "moon_relaxed_below_deg": {"moon_separation_min_deg": 30.0},
+    "phase_epoch_jd": {"phase_period_d": 3.0, "phase_half_width_d": 0.1},
+    "phase_period_d": {"phase_epoch_jd": 2455197.5, "phase_half_width_d": 0.0},
+    "phase_half_width_d": {"phase_epoch_jd": 2455197.5, "phase_period_d": 1e6},
+}
+NUMBERS = [key for key, limit in ha.LIMITS.items() if limit.kind == "number"]
+
+
+@pytest.mark.parametrize("key", NUMBERS)
 def test_each_range_is_held_at_both_ends(key):
-    limit = ha.LIMITS[key]
+    # By the engine too: the ends in degrees are within its own in radians.
+    limit, stars = ha.LIMITS[key], ha.Catalog([10.0, 100.0], [5.0, -30.0])
+    beside = BESIDE.get(key, {})
+    # Half a period is as wide as windows of a phase may be.
+    high = limit.high if key != "phase_half_width_d" else 4.9e5
     with warnings.catch_warnings():
         warnings.simplefilter("ignore", SunLimitWarning)
-        ha.Limits(**{"altitude_min_deg": -5.0, key: limit.low})
-        ha.Limits(**{key: limit.high})
-        for value in (limit.low - 1e-9, limit.high + 1e-6, np.nan, np.inf):
+        for value in (limit.low, high):
+            if key == "phase_period_d" and value == limit.low:
+                # 10,000 windows a day.
+                ha.Limits(**{**beside, key: value})
+                continue
+            given = ha.Limits(**{"altitude_min_deg": -5.0, **beside, key: value})
+            assert (ha.windows(SITE, stars, *SPAN, given).status == 0).all()
+            if limit.by_target:
+                ha.windows(SITE, stars, *SPAN, given.replace(**{key: [value, value]}))
+        for value in (limit.low - 1e-6, limit.high + 1e-3, np.nan, np.inf):
             with pytest.raises(InvalidArgument) as caught:
-                ha.Limits(**{key: value})
-            assert str(caught.value).startswith(f"Limits: {key}: given {value:g}, allowed {limit.low:g} to")
+                ha.Limits(**{**beside, key: value})
+            assert str(caught.value).startswith(
+                f"Limits: {key}: given {value:.12g}, allowed {limit.low:.9g} to"
+            )
 
 
 def test_values_of_another_kind():

@@ -34,7 +34,10 @@ def test_every_unit_is_one():
     for name, column in COLUMNS.items():
         u.Unit(column.unit)
         assert column.unit == "" or name.endswith(
-            ("_deg", "_s", "_d", "_arcsec", "_mas", "hours", "hours_moonless", "moon_separation_min")
+            (
+                *("_deg", "_s", "_d", "_arcsec", "_mag_arcsec2", "_mas", "hours", "hours_moonless"),
+                "moon_separation_min",
+            )
         )
 
 

@@ -62,10 +62,58 @@ def test_only_the_site_is_needed(tmp_path: Path) -> None:
     assert read.limits() == hourarc.Limits()
 
 
+def test_limits_that_are_lists(tmp_path: Path) -> None:
+    read = plan(
+        tmp_path,
+        SITE
+        + "[limits]\nskyline = false\nazimuth_sectors_deg = [[300, 60.0]]\ncable_range_deg = [-270, 270]\n"
+        + "allowed_intervals = [\n    [2026-03-10T23:00:00Z, 2026-03-11T05:30:00+02:00],\n"
+        + "    ['2026-03-11T04:00', 2026-03-12],\n]\n",
+    )
+    limits = read.limits()
+    assert limits["azimuth_sectors_deg"] == ((300.0, 60.0),) and limits["skyline"] is False
+    assert limits.to_dict()["allowed_intervals"] == [
+        ["2026-03-10T23:00:00.000000000", "2026-03-11T03:30:00.000000000"],
+        ["2026-03-11T04:00:00.000000000", "2026-03-12T00:00:00.000000000"],
+    ]
+
+
+def test_a_skyline_of_a_file(tmp_path: Path) -> None:
+    ridge = tmp_path / "ridge.csv"
+    for text in (
+        "# surveyed from the pier\nazimuth,altitude\n0, 3.0\n\n180,5.5 # the mast\n",
+        "0 3.0\n180\t5.5\n",
+        "az;alt\n0;3.0\n180;5.5",
+    ):
+        ridge.write_text(text)
+        site = plan(tmp_path, SITE + "skyline = 'ridge.csv'\n").site()
+        assert site.skyline.tolist() == [[0.0, 3.0], [180.0, 5.5]]
+    for text, said in (
+        ("0,3\n90,x\n", "ridge.csv, line 2: '90,x'; an azimuth and an altitude in degrees are needed"),
+        ("0,3,4\n", "ridge.csv, line 1: '0,3,4'"),
+        ("0,3\n90,nan\n", "line 2"),
+        ("a,b\nc,d\n", "line 2"),
+    ):
+        ridge.write_text(text)
+        with pytest.raises(WrongInput) as caught:
+            plan(tmp_path, SITE + "skyline = 'ridge.csv'\n")
+        assert said in str(caught.value)
+    ridge.write_text("# nothing\n")
+    with pytest.raises(BrokenFile, match="no point of a skyline"):
+        plan(tmp_path, SITE + "skyline = 'ridge.csv'\n")
+    assert "line 6, [site]: skyline: " in refused(tmp_path, SITE + "skyline = 'nowhere.csv'\n")
+    ridge.write_text("180,3\n90,4\n")
+    message = refused(tmp_path, SITE + "skyline = 'ridge.csv'\n")
+    assert (
+        "line 6, [site]: azimuth of skyline point 2: given 90 degrees, allowed azimuths in order" in message
+    )
+
+
 def test_unknown_keys_name_the_nearest_and_the_line(tmp_path: Path) -> None:
     assert refused(tmp_path, SITE + "elevation = 3\n").endswith(
         'plan.toml, line 6, [site]: unknown key "elevation"; known: longitude_deg, latitude_deg, height_m, '
-        "name, pressure_hpa, temperature_c, relative_humidity, wavelength_um, skyline"
+        "name, pressure_hpa, temperature_c, relative_humidity, wavelength_um, sky_extinction_mag, "
+        "dark_sky_mag_arcsec2, skyline"
     )
     message = refused(tmp_path, SITE + "\n[limits]\n# a remark\naltitude_min = 30\n")
     assert message.endswith(
@@ -137,6 +185,23 @@ def test_wrong_values_in_the_site(tmp_path: Path, text: str, said: str) -> None:
         ("airmass_model = 'none'", "airmass_model"),
         ("moon_separation_min_deg = { col = 'x' }", 'or { column = "..." } to take each target\'s own'),
         ("altitude_min_deg = 50\naltitude_max_deg = 40", "altitude_min_deg=50 above altitude_max_deg=40"),
+        ("skyline = 'off'", "line 7, [limits]: skyline: given None, allowed true or false"),
+        ("skyline = 3", "line 7, [limits]: skyline: given 3 (int), allowed true or false"),
+        (
+            "allowed_intervals = { column = 'x' }",
+            "line 7, [limits]: allowed_intervals is given {'column': 'x'}; it is one for all targets, "
+            'allowed pairs of UTC instants, each a start before its stop, or "off"',
+        ),
+        (
+            "allowed_intervals = [[2026-03-11, 2026-03-10]]",
+            "given 2026-03-11T00:00:00.000000000 to 2026-03-10",
+        ),
+        ("azimuth_sectors_deg = [[10, 400]]", "line 7, [limits]: azimuth_sectors_deg: given [10, 400]"),
+        ("phase_period_d = 3", "line 7, [limits]: phase_period_d: given without phase_epoch_jd"),
+        (
+            "moon_avoidance_dark_deg = 3",
+            "without moon_avoidance_bright_deg, allowed moon_avoidance_dark_deg,",
+        ),
     ],
 )
 def test_wrong_values_in_the_limits(tmp_path: Path, text: str, said: str) -> None:

@@ -26,9 +26,11 @@ __all__ = [
     "body_words",
     "debug_build",
     "event_status_words",
+    "explain",
     "first_bad_status",
     "grid_quantities",
     "instruction_sets",
+    "phase_scale_words",
     "place",
     "position_angle",
     "precession_nutation",
@@ -37,10 +39,12 @@ __all__ = [
     "rotation_angle",
     "separation",
     "sidereal_time",
+    "slots",
     "status_words",
     "version",
     "visibility_grid",
     "windows",
+    "windows_after_gap",
 ]
 
 version: str
@@ -58,6 +62,8 @@ class Site:
         temperature_c: float,
         relative_humidity: float,
         wavelength_um: float,
+        sky_extinction_mag: float,
+        dark_sky_mag_arcsec2: float,
         skyline_azimuth_deg: _Floats | None,
         skyline_altitude_deg: _Floats | None,
     ) -> Site: ...
@@ -133,16 +139,36 @@ def windows(
     orientation: Orientation,
     start_ns: int,
     stop_ns: int,
-    limits: dict[str, float | _Floats | str],
+    limits: dict[str, Any],
+    position_error_mas: float | _Floats | None,
     workers: tuple[int, str],
 ) -> dict[str, NDArray[Any]]: ...
+def explain(
+    site: Site,
+    targets: Catalog | Bodies,
+    row: int,
+    orientation: Orientation,
+    start_ns: int,
+    stop_ns: int,
+    limits: dict[str, Any],
+) -> list[tuple[int, _Nanoseconds, _Nanoseconds]]: ...
+def slots(
+    start: _Nanoseconds, stop: _Nanoseconds, origin_ns: int, step_ns: int, duration_ns: int
+) -> tuple[_Nanoseconds, _Nanoseconds]: ...
+def windows_after_gap(
+    offsets: _Nanoseconds,
+    start: _Nanoseconds,
+    stop: _Nanoseconds,
+    last_visit_ns: _Nanoseconds,
+    gap_ns: int,
+) -> tuple[_Nanoseconds, _Nanoseconds, _Nanoseconds, NDArray[np.bool_]]: ...
 def visibility_grid(
     site: Site,
     targets: Catalog | Bodies,
     orientation: Orientation,
     first_mjd: int,
     nights: int,
-    limits: dict[str, float | _Floats | str],
+    limits: dict[str, Any],
     quantities: dict[str, NDArray[np.float32] | _Floats],
     progress: Callable[[int], object] | None,
     workers: tuple[int, str],
@@ -161,4 +187,5 @@ def status_words() -> dict[int, str]: ...
 def event_status_words() -> list[str]: ...
 def body_words() -> list[str]: ...
 def airmass_model_words() -> list[str]: ...
+def phase_scale_words() -> list[str]: ...
 def instruction_sets() -> list[str]: ...

@@ -37,6 +37,7 @@ class Event:
     altitude_deg: float
     computed_error_s: float
     horizon_scatter_s: float
+    may_not_happen: bool
 
 
 @dataclass(frozen=True, slots=True, repr=False, eq=False)
@@ -61,6 +62,8 @@ class Events(Ragged, ColumnResult):
     horizon_scatter_s: Floats
     """Scatter of the instant by the refraction of the day, 1 sigma, seconds; infinite where the event may
     not happen at all."""
+    may_not_happen: NDArray[np.bool_]
+    """Whether the target's culmination is so near the threshold that it may not pass it at all."""
     status: NDArray[np.uint8]
     """What the target does over the span, shape (targets,); `status_words` says it."""
     row_status: NDArray[np.uint8]
@@ -94,7 +97,8 @@ class Events(Ragged, ColumnResult):
 
     def _events(self, rows: slice) -> list[Event]:
         kinds = [KIND_WORDS[kind] for kind in self.kind[rows]]
-        numbers = (self.azimuth_deg, self.altitude_deg, self.computed_error_s, self.horizon_scatter_s)
+        numbers: tuple[NDArray[Any], ...] = (self.azimuth_deg, self.altitude_deg)
+        numbers += (self.computed_error_s, self.horizon_scatter_s, self.may_not_happen)
         return [
             Event(*fields)
             for fields in zip(kinds, self.time[rows], *(n[rows].tolist() for n in numbers), strict=True)
@@ -112,6 +116,7 @@ class Events(Ragged, ColumnResult):
             "altitude_deg": self.altitude_deg,
             "computed_error_s": self.computed_error_s,
             "horizon_scatter_s": self.horizon_scatter_s,
+            "may_not_happen": self.may_not_happen,
         }
 
     def _heading(self) -> str:

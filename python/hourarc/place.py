@@ -27,7 +27,12 @@ DEFAULT_COLUMNS = (
     "airmass",
     "parallactic_angle_deg",
 )
-PLACE_COLUMNS = (*DEFAULT_COLUMNS, "moon_separation_deg", "sun_separation_deg")
+PLACE_COLUMNS = (
+    *DEFAULT_COLUMNS,
+    "moon_separation_deg",
+    "sun_separation_deg",
+    "sky_brightness_mag_arcsec2",
+)
 """Every column that `place` can compute; the first six are computed when nothing is said."""
 
 
@@ -55,6 +60,9 @@ class Places(ColumnResult):
     """Angle to the centre of the Moon, degrees."""
     sun_separation_deg: Floats
     """Angle to the centre of the Sun, degrees."""
+    sky_brightness_mag_arcsec2: Floats
+    """Brightness of the sky in V with the Moon in it, magnitudes a square arcsecond; NaN below the horizon.
+    After Krisciunas & Schaefer 1991 (PASP 103, 1033), good to 0.1 to 0.25 mag; twilight is not in it."""
     time: NDArray[np.datetime64]
     """The instants, UTC, datetime64[ns], in the shape they were given."""
     status: NDArray[np.uint8]

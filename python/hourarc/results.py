@@ -49,17 +49,29 @@ COLUMNS: Mapping[str, Column] = {
     ),
     "moon_separation_deg": Column("deg", "pos.angDistance", "angle to the centre of the Moon"),
     "sun_separation_deg": Column("deg", "pos.angDistance", "angle to the centre of the Sun"),
+    "sky_brightness_mag_arcsec2": Column(
+        "mag / arcsec2", "phot.mag.sb;em.opt.V", "brightness of the sky with the Moon in it, V"
+    ),
     # events
     "kind": Column("", "meta.code", "rise, transit or set"),
     "computed_error_s": Column("s", "stat.error;time.epoch", "error of the computed instant"),
     "horizon_scatter_s": Column(
         "s", "stat.stdev;time.epoch", "scatter by the refraction of the day, 1 sigma"
     ),
+    "may_not_happen": Column("", "meta.code.qual", "margin below the error: may not happen at all"),
     # windows
     "start": Column("", "time.start", "first instant, UTC"),
     "stop": Column("", "time.end", "first instant after it, UTC"),
     "start_reason": Column("", "meta.code", "limit that opens the window"),
     "stop_reason": Column("", "meta.code", "limit that closes the window"),
+    "start_error_s": Column("s", "stat.error;time.start", "error of the computed start"),
+    "stop_error_s": Column("s", "stat.error;time.end", "error of the computed stop"),
+    "start_scatter_s": Column(
+        "s", "stat.stdev;time.start", "scatter of the start by the refraction of the day, 1 sigma"
+    ),
+    "stop_scatter_s": Column(
+        "s", "stat.stdev;time.end", "scatter of the stop by the refraction of the day, 1 sigma"
+    ),
     "best_airmass": Column("", "obs.airMass;stat.min", "least airmass within the window"),
     "best_time": Column("", "time.epoch", "instant of the least airmass, UTC"),
     "blocked_by": Column("", "meta.code", "limit that leaves nothing"),

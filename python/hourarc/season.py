@@ -237,7 +237,7 @@ def visibility_grid(
         earth._handle,
         first,
         count,
-        allowed.for_engine(len(rows)),
+        allowed.for_engine(len(rows), has_skyline=here.skyline is not None),
         {key: array.reshape(-1) for key, array in arrays.items()},
         None if progress is None else lambda done: progress(done, count),
         workers(threads),

@@ -26,8 +26,13 @@ class Site:
     * ``pressure_hpa``: at the site. None is the standard atmosphere at the height; 0 is no refraction,
       and observed altitudes are then topocentric ones.
     * ``temperature_c``, ``relative_humidity`` (0 to 1), ``wavelength_um``: for the refraction.
+    * ``sky_extinction_mag``: extinction in V, magnitudes an airmass, 0.01 to 2; ``dark_sky_mag_arcsec2``: the
+      dark zenith in V, 15 to 25. For the brightness of the sky (Krisciunas & Schaefer 1991, whose values for
+      Mauna Kea are the defaults).
     * ``skyline``: altitude of the local horizon against azimuth: an array (n, 2) of azimuth (north
-      through east) and altitude in degrees, or None.
+      through east, 0 to 360, in order) and altitude in degrees, or None. Between the points run straight
+      lines, through north too; two points at one azimuth are a step. Targets below it are not observed,
+      unless ``Limits(skyline=False)`` says so.
 
     The refraction is tabulated once, here: within 0.1″ of the published ray trace from the zenith to an
     altitude of 10°, within 0.1′ at the horizon (`tests/test_accuracy_refraction.py`). A Site does not change.
@@ -35,12 +40,14 @@ class Site:
 
     __slots__ = (
         "_handle",
+        "dark_sky_mag_arcsec2",
         "height_m",
         "latitude_deg",
         "longitude_deg",
         "name",
         "pressure_hpa",
         "relative_humidity",
+        "sky_extinction_mag",
         "skyline",
         "temperature_c",
         "wavelength_um",
@@ -56,6 +63,8 @@ class Site:
     temperature_c: float
     relative_humidity: float
     wavelength_um: float
+    sky_extinction_mag: float
+    dark_sky_mag_arcsec2: float
     skyline: Floats | None
     """The skyline as given, shape (n, 2), degrees, or None."""
 
@@ -70,6 +79,8 @@ class Site:
         temperature_c: float = 10.0,
         relative_humidity: float = 0.3,
         wavelength_um: float = 0.55,
+        sky_extinction_mag: float = 0.172,
+        dark_sky_mag_arcsec2: float = 21.587,
         skyline: ArrayLike | None = None,
     ) -> None:
         place = {
@@ -82,6 +93,10 @@ class Site:
             "temperature_c": scalar(temperature_c, "Site: temperature_c", "deg_C"),
             "relative_humidity": scalar(relative_humidity, "Site: relative_humidity"),
             "wavelength_um": scalar(wavelength_um, "Site: wavelength_um", "um"),
+            "sky_extinction_mag": scalar(sky_extinction_mag, "Site: sky_extinction_mag", "mag"),
+            "dark_sky_mag_arcsec2": scalar(
+                dark_sky_mag_arcsec2, "Site: dark_sky_mag_arcsec2", "mag / arcsec2"
+            ),
         }
         if not isinstance(name, str):
             raise WrongType.of("Site: name", name, "text")
@@ -96,6 +111,8 @@ class Site:
             temperature_c=air["temperature_c"],
             relative_humidity=air["relative_humidity"],
             wavelength_um=air["wavelength_um"],
+            sky_extinction_mag=air["sky_extinction_mag"],
+            dark_sky_mag_arcsec2=air["dark_sky_mag_arcsec2"],
             skyline_azimuth_deg=azimuth,
             skyline_altitude_deg=altitude,
         )

@@ -7,11 +7,11 @@ from dataclasses import dataclass
 from typing import TYPE_CHECKING, Any
 
 import numpy as np
-from numpy.typing import NDArray
+from numpy.typing import ArrayLike, NDArray
 
 from . import _engine
-from ._columns import Floats, workers
-from .errors import WrongType
+from ._columns import Floats, column, workers
+from .errors import InvalidArgument, WrongType
 from .limits import Limits
 from .orientation import Orientation, as_orientation
 from .results import STATUS_WORDS, Coded, ColumnResult, Ragged, arrow_table, words
@@ -38,6 +38,11 @@ class Window:
     stop_reason: str
     best_airmass: float
     best_time: np.datetime64
+    start_error_s: float
+    stop_error_s: float
+    start_scatter_s: float
+    stop_scatter_s: float
+    may_not_happen: bool
 
     @property
     def duration_s(self) -> float:
@@ -67,6 +72,19 @@ class Windows(Ragged, ColumnResult):
     """The least airmass within."""
     best_time: NDArray[np.datetime64]
     """When the airmass is least, UTC."""
+    start_error_s: Floats
+    """Error of the computed start, seconds: interpolation, root, UT1, ephemeris, and the catalogue place's if
+    given."""
+    stop_error_s: Floats
+    """The same for the stop."""
+    start_scatter_s: Floats
+    """Scatter of the start by the refraction of the day, 1 sigma, seconds; 0 above 15 degrees, and where no
+    altitude of the target sets the edge."""
+    stop_scatter_s: Floats
+    """The same for the stop."""
+    may_not_happen: NDArray[np.bool_]
+    """Whether an edge is a grazing: the margin is below the error, and the window may be longer or may not
+    be."""
     status: NDArray[np.uint8]
     """Status of each target, shape (targets,); from 16 on it is a bad row."""
     blocked_by: NDArray[np.uint8]
@@ -126,7 +144,11 @@ class Windows(Ragged, ColumnResult):
         opened = [REASON_WORDS[code] for code in self.start_reason[rows]]
         closed = [REASON_WORDS[code] for code in self.stop_reason[rows]]
         airmass = self.best_airmass[rows].tolist()
-        columns = (self.start[rows], self.stop[rows], opened, closed, airmass, self.best_time[rows])
+        sure = (self.start_error_s, self.stop_error_s, self.start_scatter_s, self.stop_scatter_s)
+        columns = (
+            *(self.start[rows], self.stop[rows], opened, closed, airmass, self.best_time[rows]),
+            *(column[rows].tolist() for column in (*sure, self.may_not_happen)),
+        )
         return [Window(*fields) for fields in zip(*columns, strict=True)]
 
     def targets_to_arrow(self) -> pyarrow.Table:
@@ -156,6 +178,11 @@ class Windows(Ragged, ColumnResult):
             "stop_reason": Coded(self.stop_reason, REASON_WORDS),
             "best_airmass": self.best_airmass,
             "best_time": self.best_time,
+            "start_error_s": self.start_error_s,
+            "stop_error_s": self.stop_error_s,
+            "start_scatter_s": self.start_scatter_s,
+            "stop_scatter_s": self.stop_scatter_s,
+            "may_not_happen": self.may_not_happen,
         }
 
     def _heading(self) -> str:
@@ -170,6 +197,7 @@ def windows(
     stop: Any,
     limits: Limits | None = None,
     *,
+    position_error_mas: ArrayLike | None = None,
     orientation: Orientation | None = None,
     threads: int | None = None,
 ) -> Windows:
@@ -178,6 +206,8 @@ def windows(
     * ``start``, ``stop``: UTC, in any form that `place` takes. A night is that of `almanac`: its ``start``
       and ``stop``.
     * ``limits``: what must hold, for all targets or a value for each; None is ``Limits()``.
+    * ``position_error_mas``: how far each catalogue place may be off, for all targets or a value for each; it
+      goes into the errors of the edges.
     * ``orientation``: the Earth's orientation; None is `Orientation.packaged()`.
     * ``threads``: None for all cores. The answer is the same, bit for bit, for any number.
 
@@ -195,6 +225,7 @@ def windows(
         raise WrongType.of(
             "windows: limits", limits, "a Limits, such as Limits(altitude_min_deg=40), or None"
         )
+    error = None if position_error_mas is None else _position_error(position_error_mas, len(rows))
     earth = as_orientation(orientation)
     earth.check(np.array([first, last]), "start, stop")
     made = _engine.windows(
@@ -203,8 +234,27 @@ def windows(
         earth._handle,
         first,
         last,
-        allowed.for_engine(len(rows)),
+        allowed.for_engine(len(rows), has_skyline=here.skyline is not None),
+        error,
         workers(threads),
     )
     times = {key: from_nanoseconds(made[key]) for key in ("start", "stop", "best_time")}
     return Windows(**{**made, **times}, name=rows.name)
+
+
+def _position_error(given: ArrayLike, targets: int) -> float | Floats:
+    """The error of the catalogue places as the engine takes it: a number, or a column."""
+    what, allowed = "windows: position_error_mas", "0 to 3.6e6 mas"
+    values = column(given, what, "mas")
+    if np.ndim(given) and len(values) != targets:
+        raise InvalidArgument.of(
+            what, f"{len(values)} values", f"one value, or one for each of {targets} targets"
+        )
+    # A row whose error is not known has none stated: its edges' errors become NaN, and nothing else.
+    if np.any((values < 0.0) | (values > 3.6e6)):
+        raise InvalidArgument.of(what, f"{values[(values < 0.0) | (values > 3.6e6)][0]:g}", allowed)
+    if np.ndim(given):
+        return values
+    if np.isnan(values[0]):
+        raise InvalidArgument.of(what, "nan", allowed)
+    return float(values[0])

@@ -1,9 +1,10 @@
 """The plan: one TOML file that says where the telescope stands, what it may do, and how the target table
 is laid out.
 
-    [site]       the keywords of `hourarc.Site`; skyline as a list of [azimuth, altitude] pairs in degrees
+    [site]       the keywords of `hourarc.Site`; skyline as a list of [azimuth, altitude] pairs in degrees, or
+                 the path of a table of two such columns, from the plan's folder
     [limits]     the keywords of `hourarc.Limits`; a value for all targets, "off", or { column = "..." } for
-                 each target's own
+                 each target's own; azimuth_sectors_deg and allowed_intervals as lists of pairs
     [columns]    for each field of a target the table's column: "RA", or 5 (counted from 1), or
                  { column = "RA", unit = "hourangle" }, or { value = 1991.25 } for all rows
     [targets]    layout ("csv", "tsv", "spaces", "ecsv", "fits", "votable", "parquet"), header (true or
@@ -25,9 +26,11 @@ from typing import Any
 
 import numpy as np
 
+from ..limits import LIMITS
 from .columns import ColumnSpec, column_spec
 from .fields import COLUMN_KEYS
 from .problems import BrokenFile, WrongInput, nearest
+from .skyline import read_skyline
 from .tables import LAYOUTS
 from .targets import TargetLayout, Targets
 
@@ -90,7 +93,7 @@ class _Blame:
         if kind is None or not isinstance(error, (ValueError, TypeError)) or isinstance(error, WrongInput):
             return
         # As the plan has it: the section is named anyway, and TOML has no None.
-        message = re.sub(r"^(Site|Limits): ", "", str(error)).replace("or None (off)", 'or "off"')
+        message = _in_the_plan(re.sub(r"^(Site|Limits): ", "", str(error)))
         keys = self._plan.site_keywords if self._section == "site" else self._plan.limit_keywords
         # The complaint names the keyword, or the quantity in plain words ("height of the site").
         words = {key: re.sub(r"_(deg|m|hpa|c|um|h|s)$", "", key).replace("_", " ") for key in keys}
@@ -140,6 +143,11 @@ def read_plan(path: str | Path) -> Plan:
     _check_keys(plan, "limits", limits, _keywords(hourarc.Limits))
     for key, value in limits.items():
         if isinstance(value, dict):
+            if not LIMITS[key].by_target:
+                raise WrongInput(
+                    f"{plan.where('limits', key)}: {key} is given {value!r}; it is one for all targets, "
+                    f"allowed {_in_the_plan(LIMITS[key].allowed())}"
+                )
             if (
                 set(value) != {"column"}
                 or isinstance(value["column"], bool)
@@ -150,7 +158,7 @@ def read_plan(path: str | Path) -> Plan:
                     'or { column = "..." } to take each target\'s own from the table'
                 )
             plan.limit_columns[key] = value["column"]
-        elif isinstance(value, list):
+        elif isinstance(value, list) and LIMITS[key].by_target:
             raise WrongInput(
                 f"{plan.where('limits', key)}: {key} is given {value!r}; one value, "
                 'or { column = "..." } to take each target\'s own from the table'
@@ -187,6 +195,11 @@ def find_line(text: str, section: str | None, key: str | None) -> int | None:
     return None
 
 
+def _in_the_plan(allowed: str) -> str:
+    """What is allowed, in TOML's words."""
+    return allowed.replace("or None (off)", 'or "off"').replace("True or False", "true or false")
+
+
 def _at(line: int | None) -> str:
     return f", line {line}" if line else ""
 
@@ -207,6 +220,8 @@ def _site_value(plan: Plan, key: str, value: Any) -> Any:
         if not isinstance(value, str):
             raise WrongInput(f"{plan.where('site', key)}: name is given {value!r}; a text is needed")
         return value
+    if key == "skyline" and isinstance(value, str):
+        return read_skyline(plan.path.parent / value, plan.where("site", key))
     if key == "skyline":
         try:
             pairs = np.array(value, dtype=np.float64)
@@ -215,7 +230,7 @@ def _site_value(plan: Plan, key: str, value: Any) -> Any:
         if pairs.ndim != 2 or pairs.shape[1] != 2:
             raise WrongInput(
                 f"{plan.where('site', key)}: skyline is given {value!r}; "
-                "a list of [azimuth, altitude] pairs in degrees is needed"
+                "a list of [azimuth, altitude] pairs in degrees is needed, or the path of a table of them"
             )
         return pairs
     if isinstance(value, bool) or not isinstance(value, (int, float)):

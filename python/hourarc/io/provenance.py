@@ -67,6 +67,8 @@ def site_record(site: Any) -> dict[str, Any]:
         "temperature_c",
         "relative_humidity",
         "wavelength_um",
+        "sky_extinction_mag",
+        "dark_sky_mag_arcsec2",
     )
     record: dict[str, Any] = {key: getattr(site, key) for key in keys}
     if site.skyline is not None:
@@ -77,7 +79,7 @@ def site_record(site: Any) -> dict[str, Any]:
 def limits_record(plan: Plan, limits: Any) -> dict[str, Any]:
     """The limits as they were computed with: the defaults filled in, columns named and not copied."""
     columns = {key: {"column": column} for key, column in plan.limit_columns.items()}
-    return {key: columns[key] if key in columns else limits[key] for key in limits}
+    return {key: columns.get(key, value) for key, value in limits.to_dict().items()}
 
 
 def _sun_limit_lowered(limits: Any) -> bool:

@@ -40,6 +40,11 @@ DECIMALS = {
     "moon_separation_deg": 10,
     "sun_separation_deg": 10,
     "airmass": 6,
+    "sky_brightness_mag_arcsec2": 6,
+    "start_error_s": 6,
+    "stop_error_s": 6,
+    "start_scatter_s": 3,
+    "stop_scatter_s": 3,
 }
 
 
@@ -60,6 +65,16 @@ def windows_table(windows: Any, targets: Targets, first: int = 0) -> pa.Table:
         "stop_reason": table["stop_reason"],
         "best_time": table["best_time"],
         "best_airmass": table["best_airmass"],
+        **{
+            name: table[name]
+            for name in (
+                "start_error_s",
+                "stop_error_s",
+                "start_scatter_s",
+                "stop_scatter_s",
+                "may_not_happen",
+            )
+        },
     }
     return _table(columns)
 

@@ -41,6 +41,7 @@ pub fn rise_transit_set<'py>(
     columns.set_item("altitude_deg", column(py, table.altitude_deg))?;
     columns.set_item("computed_error_s", column(py, table.computed_error_s))?;
     columns.set_item("horizon_scatter_s", column(py, table.horizon_scatter_s))?;
+    columns.set_item("may_not_happen", column(py, table.may_not_happen))?;
     columns.set_item("status", column(py, table.passage))?;
     columns.set_item("row_status", column(py, table.status))?;
     Ok(columns)

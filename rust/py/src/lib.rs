@@ -8,12 +8,14 @@ mod arrays;
 mod earth;
 mod errors;
 mod events;
+mod explain;
 mod geometry;
 mod limits;
 mod orientation;
 mod place;
 mod season;
 mod site;
+mod slots;
 mod targets;
 mod windows;
 mod words;
@@ -32,6 +34,8 @@ mod _engine {
     #[pymodule_export]
     use crate::events::rise_transit_set;
     #[pymodule_export]
+    use crate::explain::explain;
+    #[pymodule_export]
     use crate::geometry::{position_angle, separation};
     #[pymodule_export]
     use crate::orientation::Orientation;
@@ -42,12 +46,15 @@ mod _engine {
     #[pymodule_export]
     use crate::site::Site;
     #[pymodule_export]
+    use crate::slots::{slots, windows_after_gap};
+    #[pymodule_export]
     use crate::targets::{Bodies, Catalog};
     #[pymodule_export]
     use crate::windows::windows;
     #[pymodule_export]
     use crate::words::{
-        airmass_model_words, body_words, event_status_words, instruction_sets, reason_words, status_words,
+        airmass_model_words, body_words, event_status_words, instruction_sets, phase_scale_words,
+        reason_words, status_words,
     };
 
     #[pymodule_init]

@@ -37,7 +37,7 @@ pub fn place(
         .iter_mut()
         .map(|(column, array)| Ok((*column, array.as_slice_mut()?)))
         .collect::<PyResult<Vec<_>>>()?;
-    let out = PlaceColumns { columns, status: status.as_slice_mut()? };
+    let out = PlaceColumns { columns, sky_model: site.sky_model, status: status.as_slice_mut()? };
     let shape = if pairwise { Shape::Pairwise } else { Shape::Grid };
     let ephemeris = targets.ephemeris();
     let (observer, rows) = (site.observer(orientation, &ephemeris), targets.rows());

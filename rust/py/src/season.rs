@@ -7,7 +7,7 @@ use pyo3::types::PyDict;
 
 use crate::arrays::{codes, column, writable};
 use crate::errors::raise;
-use crate::limits::limits;
+use crate::limits::{Given, limits};
 use crate::orientation::Orientation;
 use crate::site::Site;
 use crate::targets::Targets;
@@ -29,7 +29,7 @@ pub fn visibility_grid<'py>(
     orientation: &Orientation,
     first_mjd: i64,
     nights: usize,
-    #[pyo3(from_py_with = limits)] limits: hourarc_core::windows::Limits,
+    #[pyo3(from_py_with = limits)] limits: Given,
     quantities: &Bound<'py, PyDict>,
     progress: Option<Bound<'py, PyAny>>,
     workers: Workers,
@@ -52,6 +52,7 @@ pub fn visibility_grid<'py>(
         };
         columns.push((*quantity, values));
     }
+    let limits = limits.under(site.sky_model);
     let ephemeris = targets.ephemeris();
     let (observer, rows) = (site.observer(orientation, &ephemeris), targets.rows());
     let report = workers::run_telling(py, &workers, progress.as_ref(), |workers, progress| {

@@ -5,6 +5,7 @@ use hourarc_core::constants::RADIANS_PER_DEGREE;
 use hourarc_core::ephemeris::Ephemeris;
 use hourarc_core::refraction::{Atmosphere, Refraction};
 use hourarc_core::site::{self, Skyline};
+use hourarc_core::windows::SkyModel;
 use pyo3::prelude::*;
 
 use crate::arrays::{Floats, equal};
@@ -18,13 +19,15 @@ pub struct Site {
     pub place: site::Site,
     /// The refraction of its air.
     pub refraction: Refraction,
+    /// What the brightness of its sky is computed from.
+    pub sky_model: SkyModel,
     pressure_hpa: f64,
 }
 
 #[pymethods]
 impl Site {
     #[new]
-    #[pyo3(signature = (longitude_deg, latitude_deg, height_m, pressure_hpa, temperature_c, relative_humidity, wavelength_um, skyline_azimuth_deg, skyline_altitude_deg))]
+    #[pyo3(signature = (longitude_deg, latitude_deg, height_m, pressure_hpa, temperature_c, relative_humidity, wavelength_um, sky_extinction_mag, dark_sky_mag_arcsec2, skyline_azimuth_deg, skyline_altitude_deg))]
     fn new(
         py: Python<'_>,
         longitude_deg: f64,
@@ -34,6 +37,8 @@ impl Site {
         temperature_c: f64,
         relative_humidity: f64,
         wavelength_um: f64,
+        sky_extinction_mag: f64,
+        dark_sky_mag_arcsec2: f64,
         skyline_azimuth_deg: Option<Floats<'_>>,
         skyline_altitude_deg: Option<Floats<'_>>,
     ) -> PyResult<Self> {
@@ -45,11 +50,13 @@ impl Site {
                 );
             place = place.with_skyline(Skyline::new(&azimuth, &altitude).map_err(raise)?);
         }
+        let sky_model = SkyModel { extinction_v: sky_extinction_mag, dark_zenith_v: dark_sky_mag_arcsec2 };
+        sky_model.check().map_err(raise)?;
         let pressure_hpa = pressure_hpa.unwrap_or_else(|| Atmosphere::standard_pressure_hpa(height_m));
         let air = Atmosphere { pressure_hpa, temperature_c, relative_humidity, wavelength_um };
         let refraction =
             py.detach(|| Refraction::new(&air, place.latitude(), place.height_m())).map_err(raise)?;
-        Ok(Site { place, refraction, pressure_hpa })
+        Ok(Site { place, refraction, sky_model, pressure_hpa })
     }
 
     /// The pressure in force, hPa.

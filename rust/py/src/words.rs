@@ -5,7 +5,7 @@ use hourarc_core::error::Status;
 use hourarc_core::events::Passage;
 use hourarc_core::math::dispatch::Isa;
 use hourarc_core::refraction::AirmassModel;
-use hourarc_core::windows::Cause;
+use hourarc_core::windows::{Cause, PhaseScale};
 use pyo3::prelude::*;
 use pyo3::types::PyDict;
 
@@ -47,6 +47,12 @@ pub fn body_words() -> Vec<&'static str> {
 #[pyfunction]
 pub fn airmass_model_words() -> Vec<&'static str> {
     AirmassModel::ALL.iter().map(|model| model.word()).collect()
+}
+
+/// The names of the clocks on which phases are counted.
+#[pyfunction]
+pub fn phase_scale_words() -> Vec<&'static str> {
+    [PhaseScale::BarycentricTdb, PhaseScale::HeliocentricUtc].map(PhaseScale::word).to_vec()
 }
 
 /// The instruction sets that the inner loops can be run with on this processor, the widest last.
