@@ -123,7 +123,8 @@ _ALL = (
         high=90.0,
         at_most="declination_max_deg",
         reason="declination",
-        note="Topocentric, of date (CIRS), as `place` gives it.",
+        note="Topocentric, of date, about the terrestrial pole, as a mount's axis sees it: polar motion "
+        "sets it up to 0.6 arcsec off the declination of `place`.",
     ),
     Limit(
         "declination_max_deg",
