@@ -11,9 +11,12 @@ use super::catalog::Star;
 use super::deflection::deflected;
 use super::parallax::{from_observer, light_travel_lead_yr};
 use super::sky::Sky;
-use crate::constants::LIGHT_TIME_AU_S;
-use crate::ephemeris::{Body, Ephemeris};
+use super::targets::Moving;
+use crate::constants::{AU_PER_DAY_OVER_C, LIGHT_TIME_AU_S};
+use crate::ephemeris::orbits::Orbits;
+use crate::ephemeris::{Body, Ephemeris, State};
 use crate::error::Status;
+use crate::math::dispatch::Isa;
 use crate::math::vector::{Vector, add_scaled, norm, scale, sub, unit};
 
 /// Direction of a star before light is bent: space motion and parallax, a unit vector on the axes of the
@@ -47,6 +50,29 @@ pub struct BodyDirection {
     pub light_distance_au: f64,
 }
 
+/// Vector from the observer to where a body was when the light left it, au, ICRS axes, and the light time in
+/// seconds, iterated until it no longer changes.
+///
+/// # Errors
+/// [`Status::OutsideEphemeris`] when the light left outside the ephemeris.
+pub(super) fn when_light_left(
+    body: Body,
+    ephemeris: &Ephemeris,
+    sky: &Sky,
+) -> std::result::Result<(Vector, f64), Status> {
+    // The error shrinks by v/c ≈ 1e-4 an iteration: after three it is below 1e-12 of the path.
+    const ITERATIONS: usize = 3;
+    let tdb = sky.tdb();
+    let mut light_time_s = 0.0;
+    let mut from_observer_au = [0.0; 3];
+    for _ in 0..=ITERATIONS {
+        let body_au = ephemeris.position(body, tdb.plus_seconds(-light_time_s))?;
+        from_observer_au = sub(body_au, sky.observer_au);
+        light_time_s = norm(from_observer_au) * LIGHT_TIME_AU_S;
+    }
+    Ok((from_observer_au, light_time_s))
+}
+
 /// Proper direction of a body, light time iterated until it no longer changes.
 ///
 /// # Errors
@@ -56,27 +82,64 @@ pub fn body_direction(
     ephemeris: &Ephemeris,
     sky: &Sky,
 ) -> std::result::Result<BodyDirection, Status> {
-    // The error shrinks by v/c ≈ 1e-4 an iteration: after three it is below 1e-12 of the path.
-    const ITERATIONS: usize = 3;
-    let tdb = sky.tdb();
-    let mut light_time_s = 0.0;
-    let mut from_observer_au = [0.0; 3];
-    let mut body_au = [0.0; 3];
-    for _ in 0..=ITERATIONS {
-        body_au = ephemeris.position(body, tdb.plus_seconds(-light_time_s))?;
-        from_observer_au = sub(body_au, sky.observer_au);
-        light_time_s = norm(from_observer_au) * LIGHT_TIME_AU_S;
-    }
+    let (from_observer_au, _) = when_light_left(body, ephemeris, sky)?;
+    Ok(match body {
+        // Light from the Sun itself is not bent sideways, and none passes the Sun on its way from the Moon.
+        Body::Sun | Body::Moon => {
+            let light_distance_au = norm(from_observer_au);
+            let natural = scale(1.0 / light_distance_au, from_observer_au);
+            let direction = aberrated(natural, sky.velocity_c, sky.inverse_gamma, sky.sun_distance_au);
+            BodyDirection { direction, light_distance_au }
+        }
+        _ => near_direction(from_observer_au, sky),
+    })
+}
+
+/// Proper direction of what stood at `from_observer_au` when the light left it: deflection, aberration.
+#[inline(always)]
+pub fn near_direction(from_observer_au: Vector, sky: &Sky) -> BodyDirection {
     let light_distance_au = norm(from_observer_au);
     let coordinate = scale(1.0 / light_distance_au, from_observer_au);
-    let natural = match body {
-        // Light from the Sun itself is not bent sideways, and none passes the Sun on its way from the Moon.
-        Body::Sun | Body::Moon => coordinate,
-        _ => {
-            let from_sun = unit(sub(body_au, sky.sun_au));
-            unit(deflected(coordinate, from_sun, sky.sun_to_observer, sky.sun_distance_au))
-        }
-    };
+    let from_sun = unit(add_scaled(from_observer_au, sky.sun_distance_au, sky.sun_to_observer));
+    let natural = unit(deflected(coordinate, from_sun, sky.sun_to_observer, sky.sun_distance_au));
     let direction = aberrated(natural, sky.velocity_c, sky.inverse_gamma, sky.sun_distance_au);
-    Ok(BodyDirection { direction, light_distance_au })
+    BodyDirection { direction, light_distance_au }
+}
+
+/// The observer of a sky as the tables of orbits take one: barycentric, au and au/day.
+pub fn observer_state(sky: &Sky) -> State {
+    State { position: sky.observer_au, velocity: scale(1.0 / AU_PER_DAY_OVER_C, sky.velocity_c) }
+}
+
+/// Proper direction of a row of orbits by two-body motion; NaN for a bad row.
+///
+/// Error of the chain: 1 µas of light time ([`Orbits::astrometric_batch`]) and of deflection as for a planet;
+/// how far two-body motion itself may be off says [`Orbits::drift_au`].
+///
+/// # Errors
+/// [`Status::OutsideEphemeris`] when there is no Sun at the instant.
+pub fn orbit_direction(
+    orbits: &Orbits,
+    row: usize,
+    isa: Isa,
+    ephemeris: &Ephemeris,
+    sky: &Sky,
+) -> std::result::Result<BodyDirection, Status> {
+    let tdb = sky.tdb();
+    let sun = ephemeris.state(Body::Sun, tdb)?;
+    let seen = orbits.astrometric(isa, row, tdb, observer_state(sky), sun);
+    Ok(near_direction(seen.position, sky))
+}
+
+impl Moving<'_> {
+    /// Proper direction: [`body_direction`] or [`orbit_direction`].
+    ///
+    /// # Errors
+    /// [`Status::OutsideEphemeris`].
+    pub fn direction(&self, ephemeris: &Ephemeris, sky: &Sky) -> std::result::Result<BodyDirection, Status> {
+        match *self {
+            Moving::Body(body) => body_direction(body, ephemeris, sky),
+            Moving::Orbit(orbits, row) => orbit_direction(orbits, row, Isa::best(), ephemeris, sky),
+        }
+    }
 }

@@ -6,6 +6,7 @@
 //! downstream takes either, and `tests` hold them together from both sides.
 
 pub mod aberration;
+pub mod appearance;
 pub mod catalog;
 pub mod chain;
 pub mod deflection;
@@ -15,8 +16,12 @@ pub mod space_motion;
 pub mod targets;
 pub mod track;
 
+pub use appearance::{Appearance, appearance};
 pub use catalog::{Catalog, CatalogColumns, Star, StarColumns};
-pub use chain::{BodyDirection, body_direction, coordinate_direction, star_direction};
+pub use chain::{
+    BodyDirection, body_direction, coordinate_direction, near_direction, observer_state, orbit_direction,
+    star_direction,
+};
 pub use sky::{Celestial, Observer, Sky};
-pub use targets::Targets;
+pub use targets::{Moving, Targets};
 pub use track::{Node, Track, TrackPlan};

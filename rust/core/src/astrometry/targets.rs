@@ -2,6 +2,7 @@
 
 use super::catalog::Catalog;
 use crate::ephemeris::Body;
+use crate::ephemeris::orbits::Orbits;
 use crate::error::Status;
 
 /// Rows of targets of one kind.
@@ -11,14 +12,32 @@ pub enum Targets<'a> {
     Catalog(&'a Catalog),
     /// Bodies of the solar system, from the observer's ephemeris.
     Bodies(&'a [Body]),
+    /// Minor bodies on their orbits about the Sun of the observer's ephemeris.
+    Orbits(&'a Orbits),
 }
 
-impl Targets<'_> {
+/// One target of the solar system: it moves among the stars, and is near enough for parallax to be large.
+#[derive(Debug, Clone, Copy)]
+pub enum Moving<'a> {
+    /// The Sun, the Moon or a planet.
+    Body(Body),
+    /// A row of a table of orbits.
+    Orbit(&'a Orbits, usize),
+}
+
+impl From<Body> for Moving<'_> {
+    fn from(body: Body) -> Self {
+        Moving::Body(body)
+    }
+}
+
+impl<'a> Targets<'a> {
     /// Number of rows, good and bad.
     pub fn len(&self) -> usize {
         match self {
             Targets::Catalog(catalog) => catalog.len(),
             Targets::Bodies(bodies) => bodies.len(),
+            Targets::Orbits(orbits) => orbits.len(),
         }
     }
 
@@ -32,6 +51,16 @@ impl Targets<'_> {
         match self {
             Targets::Catalog(catalog) => catalog.status()[row],
             Targets::Bodies(_) => Status::Ok,
+            Targets::Orbits(orbits) => orbits.status(row),
+        }
+    }
+
+    /// The target of a row, if these are targets that move; `None` for a catalogue.
+    pub fn moving(&self, row: usize) -> Option<Moving<'a>> {
+        match self {
+            Targets::Catalog(_) => None,
+            Targets::Bodies(bodies) => Some(Moving::Body(bodies[row])),
+            Targets::Orbits(orbits) => Some(Moving::Orbit(orbits, row)),
         }
     }
 }

@@ -8,9 +8,10 @@
 //! No dip of the horizon, no height of the site. Twilight lasts as long as the Sun is where it says:
 //! near the poles a night may have none, or a dusk without its dawn.
 
-use super::arc::{Arc, BODY_NODES, directions_at, node_fraction};
+use super::arc::{Arc, node_fraction};
 use super::crossing::Crossing;
 use super::days::{Days, track_for};
+use super::moving::{BODY_NODES, directions_at};
 use crate::astrometry::{Observer, body_direction};
 use crate::constants::{ASTRONOMICAL_UNIT_M, RADIANS_PER_DEGREE, TURN, WGS84_EQUATORIAL_RADIUS_M};
 use crate::earth::bias_precession_nutation;
@@ -232,22 +233,28 @@ impl MoonPhase {
         let (earth, sun, moon) = positions(observer, tai)?;
         // Angle at the Moon between the Sun and the Earth.
         let phase_angle = angle(sub(sun, moon), sub(earth, moon));
-        let mut age_d = moon_elongation(observer, tai)?.rem_euclid(TURN) / TURN * SYNODIC_MONTH_D;
-        // The elongation grows by 10° to 15° a day: each step leaves a fifth of the error or less.
-        for _ in 0..12 {
-            let elongation = moon_elongation(observer, tai.plus_seconds(-age_d * 86_400.0))?;
-            let step = (elongation - TURN * (elongation / TURN).round()) / TURN * SYNODIC_MONTH_D;
-            age_d += step;
-            if step.abs() < 1e-7 {
-                break;
-            }
-        }
-        // A step past the new Moon of this very night makes the age that of the one before.
-        if age_d < 0.0 {
-            age_d += SYNODIC_MONTH_D;
-        }
+        let age_d = moon_age_d(observer, tai)?;
         Ok(MoonPhase { age_d, illuminated_fraction: 0.5 * (1.0 + phase_angle.cos()) })
     }
+}
+
+/// Days since the last new Moon, which is where [`moon_elongation`] passes zero.
+pub(crate) fn moon_age_d(observer: &Observer<'_>, tai: Instant<Tai>) -> std::result::Result<f64, Status> {
+    let mut age_d = moon_elongation(observer, tai)?.rem_euclid(TURN) / TURN * SYNODIC_MONTH_D;
+    // The elongation grows by 10° to 15° a day: each step leaves a fifth of the error or less.
+    for _ in 0..12 {
+        let elongation = moon_elongation(observer, tai.plus_seconds(-age_d * 86_400.0))?;
+        let step = (elongation - TURN * (elongation / TURN).round()) / TURN * SYNODIC_MONTH_D;
+        age_d += step;
+        if step.abs() < 1e-7 {
+            break;
+        }
+    }
+    // A step past the new Moon of this very night makes the age that of the one before.
+    if age_d < 0.0 {
+        age_d += SYNODIC_MONTH_D;
+    }
+    Ok(age_d)
 }
 
 fn positions(

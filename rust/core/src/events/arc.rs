@@ -12,18 +12,16 @@
 //! two aberrations that is a rotation (15 µas), diurnal parallax of stars (33 µas for the nearest).
 //! Together below [`STAR_ARC_ERROR_RAD`].
 //!
-//! For a body ([`BodyArc`]) the exact chain is sampled on Chebyshev nodes over the day.
+//! For a body ([`BodyArc`](super::BodyArc)) the exact chain is sampled on Chebyshev nodes over the day.
 
-use crate::astrometry::{Observer, Sky, Star, Track, body_direction, star_direction};
+use crate::astrometry::{Observer, Sky, Star, Track, star_direction};
 use crate::constants::{
-    EARTH_ROTATION_RAD_PER_S, RADIANS_PER_MICROARCSECOND, RADIANS_PER_MILLIARCSECOND, SECONDS_PER_DAY,
-    SPEED_OF_LIGHT_M_S, TURN,
+    EARTH_ROTATION_RAD_PER_S, RADIANS_PER_MICROARCSECOND, SECONDS_PER_DAY, SPEED_OF_LIGHT_M_S, TURN,
 };
 use crate::earth::{polar_motion, s_prime};
-use crate::ephemeris::Body;
 use crate::error::Status;
 use crate::horizon::Latitude;
-use crate::math::chebyshev::{Chebyshev, ChebyshevVector, node};
+use crate::math::chebyshev::node;
 use crate::math::vector::{
     Matrix, Vector, add, add_scaled, cross, dot, product, rotate, rotate_back, rotation_3, scale, sub,
 };
@@ -32,14 +30,9 @@ use crate::time::{Instant, Tai, Tt, Utc};
 /// What a star's arc leaves out, radians: the sum of the terms in the module's text, 20° from the Sun
 /// or farther it is half of that.
 pub const STAR_ARC_ERROR_RAD: f64 = 70.0 * RADIANS_PER_MICROARCSECOND;
-/// Error of the compact ephemeris in direction, radians, as its tests hold it.
-pub const BODY_ARC_ERROR_RAD: f64 = RADIANS_PER_MILLIARCSECOND;
 
 const NANOSECONDS_PER_DAY: f64 = SECONDS_PER_DAY * 1e9;
 
-/// Coefficients of a body's Chebyshev series over a day. The fastest term is the rotation of the
-/// Earth, whose coefficients fall as the Bessel functions J_k(π): below 1e-16 from the 22nd.
-pub const BODY_NODES: usize = 25;
 /// Coefficients of the separation between two directions over a day, in which the rotation of the
 /// Earth enters by the Moon's parallax alone.
 pub const SEPARATION_NODES: usize = 17;
@@ -62,6 +55,8 @@ pub struct Arc<'a> {
     pub pole_error: f64,
     /// Sine and cosine of the latitude.
     pub latitude: Latitude,
+    /// The observer's sky at the beginning and the end.
+    skies_at_ends: [Sky; 2],
     /// The sky of the Earth's centre at the three nodes.
     pub(super) centre: [Sky; 3],
     /// Angle of rotation at the three nodes, unwrapped, and coefficients of powers of the day's fraction.
@@ -95,6 +90,7 @@ impl<'a> Arc<'a> {
     pub fn new(observer: Observer<'a>, track: &'a Track, day: i64) -> std::result::Result<Self, Status> {
         let instant = |i: usize| Instant::<Tt>::from_mjd(day as f64, 0.5 * i as f64).to_tai();
         let mut centre = Vec::with_capacity(3);
+        let mut skies = Vec::with_capacity(3);
         let mut horizon_at = [[[0.0; 3]; 3]; 3];
         let mut rotation_angle = [0.0; 3];
         let (mut note, mut ut1_error_s, mut pole_error) = (Status::Ok, 0.0f64, 0.0f64);
@@ -109,6 +105,7 @@ impl<'a> Arc<'a> {
             ut1_error_s = ut1_error_s.max(sky.pole.ut1_error_s);
             pole_error = pole_error.max(sky.pole.pole_error);
             centre.push(sky.geocentric(&celestial));
+            skies.push(sky);
         }
         // Half a day is a little more than half a turn.
         for i in 1..3 {
@@ -140,6 +137,7 @@ impl<'a> Arc<'a> {
         let end = |i: usize| product(&horizon_at[i], &rotation_3(centre[i].rotation_angle));
         Ok(Arc {
             bend,
+            skies_at_ends: [skies[0], skies[2]],
             ends: [end(0), end(2)],
             zenith: Plane::of(&horizon_at[1], [0.0, 0.0, 1.0]),
             observer,
@@ -190,6 +188,11 @@ impl<'a> Arc<'a> {
     /// [`Status::OutsideEphemeris`].
     pub fn sky(&self, fraction: f64) -> std::result::Result<Sky, Status> {
         self.track.sky(&self.observer, self.instant(fraction))
+    }
+
+    /// The observer's sky at the beginning and the end of the day.
+    pub fn skies_at_ends(&self) -> &[Sky; 2] {
+        &self.skies_at_ends
     }
 
     /// The sky of the Earth's centre at a fraction of the day.
@@ -514,49 +517,4 @@ pub(super) struct Motion {
     pub rate: f64,
     pub middle: f64,
     pub swing: f64,
-}
-
-/// A body of the solar system during one day: its topocentric direction on the horizon.
-#[derive(Debug, Clone)]
-pub struct BodyArc {
-    /// North, east, zenith over the fraction of the day.
-    pub local: ChebyshevVector<BODY_NODES, 3>,
-    /// At the beginning and at the end of the day, from the chain itself: the end of one day and the
-    /// beginning of the next are the same bits.
-    pub ends: [Vector; 2],
-}
-
-impl BodyArc {
-    /// From the skies of [`Arc::skies`]`::<BODY_NODES>`.
-    ///
-    /// # Errors
-    /// [`Status::OutsideEphemeris`].
-    pub fn new(arc: &Arc<'_>, skies: &[Sky], body: Body) -> std::result::Result<Self, Status> {
-        let directions = directions_at(arc, skies, body)?;
-        let ends = [arc.sky(0.0)?, arc.sky(1.0)?];
-        let ends = directions_at(arc, &ends, body)?;
-        Ok(BodyArc { local: series_of(&directions), ends: [ends[0], ends[1]] })
-    }
-
-    /// The series of one component: 0 north, 1 east, 2 zenith.
-    pub fn component(&self, axis: usize) -> Chebyshev<BODY_NODES> {
-        self.local.component(axis)
-    }
-}
-
-/// Direction of a body on the horizon at each sky.
-///
-/// # Errors
-/// [`Status::OutsideEphemeris`].
-pub fn directions_at(arc: &Arc<'_>, skies: &[Sky], body: Body) -> std::result::Result<Vec<Vector>, Status> {
-    skies
-        .iter()
-        .map(|sky| Ok(rotate(&sky.local, body_direction(body, arc.observer.ephemeris, sky)?.direction)))
-        .collect()
-}
-
-/// The series over the day through samples at its Chebyshev nodes.
-fn series_of<const N: usize>(samples: &[Vector]) -> ChebyshevVector<N, 3> {
-    let mut next = samples.iter();
-    ChebyshevVector::fit(0.0, 1.0, |_| *next.next().expect("as many samples as nodes"))
 }

@@ -7,7 +7,8 @@
 //! it or the site stands at a pole, and for bodies, which move as they please, the crossings are
 //! those of a Chebyshev series over the day, isolated in the Bernstein basis: none can be missed.
 
-use super::arc::{Arc, BodyArc, Motion, Plane, StarArc};
+use super::arc::{Arc, Motion, Plane, StarArc};
+use super::moving::BodyArc;
 pub use crate::math::bernstein::Crossing;
 use crate::math::chebyshev::Chebyshev;
 use crate::math::roots::newton_between;
@@ -344,6 +345,6 @@ impl DayPath for BodyArc {
     }
 
     fn error_rad(&self) -> f64 {
-        super::arc::BODY_ARC_ERROR_RAD
+        self.error_rad
     }
 }

@@ -1,8 +1,8 @@
 //! A span of UTC as the days of TT that it touches.
 
-use super::arc::{Arc, BODY_NODES, BodyArc, StarArc};
-use crate::astrometry::{Observer, Sky, Targets, Track, TrackPlan};
-use crate::ephemeris::Body;
+use super::arc::{Arc, StarArc};
+use super::moving::{BODY_NODES, BodyArc};
+use crate::astrometry::{Moving, Observer, Sky, Targets, Track, TrackPlan};
 use crate::error::{Error, Result, Status};
 use crate::time::{Instant, Tai, Utc};
 
@@ -95,12 +95,12 @@ impl<'a> Days<'a> {
         Ok(Days { arcs, start, stop, start_tai, stop_tai, skies: Vec::new() })
     }
 
-    /// Prepares what bodies need; a catalogue does without.
+    /// Prepares what targets need that move; a catalogue does without.
     ///
     /// # Errors
     /// When the span leaves the ephemeris.
     pub fn prepare(&mut self, targets: &Targets<'_>) -> Result<()> {
-        if matches!(targets, Targets::Bodies(_)) && self.skies.is_empty() {
+        if !matches!(targets, Targets::Catalog(_)) && self.skies.is_empty() {
             self.skies = self
                 .arcs
                 .iter()
@@ -138,11 +138,28 @@ impl<'a> Days<'a> {
         StarArc::new(&self.arcs[index], star)
     }
 
-    /// A body on one of the days; [`Days::prepare`] comes first.
+    /// Row `row` of targets that move on one of the days; [`Days::prepare`] comes first.
+    ///
+    /// # Errors
+    /// [`Status::OutsideEphemeris`]; [`Status::NoDirection`] for a catalogue.
+    pub fn moving(
+        &self,
+        index: usize,
+        targets: &Targets<'_>,
+        row: usize,
+    ) -> std::result::Result<BodyArc, Status> {
+        targets.moving(row).map_or(Err(Status::NoDirection), |target| self.body(index, target))
+    }
+
+    /// A target that moves on one of the days; [`Days::prepare`] comes first.
     ///
     /// # Errors
     /// [`Status::OutsideEphemeris`].
-    pub fn body(&self, index: usize, body: Body) -> std::result::Result<BodyArc, Status> {
-        BodyArc::new(&self.arcs[index], &self.skies[index], body)
+    pub fn body<'t>(
+        &self,
+        index: usize,
+        target: impl Into<Moving<'t>>,
+    ) -> std::result::Result<BodyArc, Status> {
+        BodyArc::new(&self.arcs[index], &self.skies[index], target)
     }
 }

@@ -96,14 +96,18 @@ pub fn rise_transit_set_with(
     let topocentric = days.observer().refraction.topocentric_altitude(threshold);
     let mut scratch = Scratch::default();
     let mut above_at_start = false;
+    let mut status = status;
     for (index, arc) in days.arcs.iter().enumerate() {
         let above = match targets {
             Targets::Catalog(catalog) => {
                 let path = days.star(index, &catalog.star(row));
                 day_events(days, arc, &path, (topocentric, position_error), &mut scratch, events)
             }
-            Targets::Bodies(bodies) => match days.body(index, bodies[row]) {
-                Ok(path) => day_events(days, arc, &path, (topocentric, position_error), &mut scratch, events),
+            Targets::Bodies(_) | Targets::Orbits(_) => match days.moving(index, targets, row) {
+                Ok(path) => {
+                    status = status.worst(path.note);
+                    day_events(days, arc, &path, (topocentric, position_error), &mut scratch, events)
+                }
                 Err(status) => {
                     events.truncate(before);
                     return (Passage::BadRow, status);

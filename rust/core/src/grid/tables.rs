@@ -125,7 +125,7 @@ pub fn event_table(
     let days = &*days;
     let blocks = match targets {
         Targets::Catalog(catalog) => star_blocks(days, catalog, threshold, workers)?,
-        Targets::Bodies(_) => by_target(
+        Targets::Bodies(_) | Targets::Orbits(_) => by_target(
             targets.len(),
             days.arcs.len(),
             workers,

@@ -56,9 +56,9 @@ impl LimitedSpan<'_> {
                     let path = StarArc::new(&self.days.arcs[index], &star);
                     self.explain_day(index, &path, Some(&star), row, &mut workspace, &mut limits);
                 }
-                Targets::Bodies(bodies) => {
+                Targets::Bodies(_) | Targets::Orbits(_) => {
                     // That the ephemeris reaches so far is known from the windows.
-                    if let Ok(path) = self.days.body(index, bodies[row]) {
+                    if let Ok(path) = self.days.moving(index, targets, row) {
                         self.explain_day(index, &path, None, row, &mut workspace, &mut limits);
                     }
                 }

@@ -213,7 +213,7 @@ impl<'a> LimitedSpan<'a> {
         workspace: &mut Workspace,
         windows: &mut Vec<Window>,
     ) -> TargetWindows {
-        let status = self.status(targets, row);
+        let mut status = self.status(targets, row);
         if status.is_bad() {
             return TargetWindows { status, blocked_by: Cause::BadRow };
         }
@@ -223,7 +223,7 @@ impl<'a> LimitedSpan<'a> {
         workspace.branch = None;
         let star = match targets {
             Targets::Catalog(catalog) => Some(catalog.star(row)),
-            Targets::Bodies(_) => None,
+            Targets::Bodies(_) | Targets::Orbits(_) => None,
         };
         let mut yesterday: Option<(usize, StarArc)> = None;
         for (index, day) in self.limited.iter().enumerate() {
@@ -255,11 +255,13 @@ impl<'a> LimitedSpan<'a> {
                     self.day(index, &path, Some(star), row, workspace);
                     yesterday = Some((index, path));
                 }
-                (None, Targets::Bodies(bodies)) => match self.days.body(index, bodies[row]) {
-                    Ok(path) => self.day(index, &path, None, row, workspace),
+                (None, _) => match self.days.moving(index, targets, row) {
+                    Ok(path) => {
+                        status = status.worst(path.note);
+                        self.day(index, &path, None, row, workspace);
+                    }
                     Err(status) => return TargetWindows { status, blocked_by: Cause::BadRow },
                 },
-                (None, Targets::Catalog(_)) => {}
             }
         }
         let status = status.worst(self.days.note());

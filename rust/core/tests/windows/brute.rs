@@ -407,8 +407,9 @@ fn direction_of(targets: &Targets<'_>, row: usize, setting: &Setting, sky: &Sky)
             let years = (sky.tdb().mjd() - J2000_MJD) / DAYS_PER_JULIAN_YEAR - star.epoch_yr;
             (star_direction(&star, sky), Some(unit(add_scaled(star.position, years, star.motion))))
         }
-        Targets::Bodies(bodies) => {
-            (body_direction(bodies[row], &setting.ephemeris, sky).unwrap().direction, None)
+        Targets::Bodies(_) | Targets::Orbits(_) => {
+            let target = targets.moving(row).unwrap();
+            (target.direction(&setting.ephemeris, sky).unwrap().direction, None)
         }
     }
 }

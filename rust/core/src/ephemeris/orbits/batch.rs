@@ -16,6 +16,12 @@ impl Orbits {
         Isa::best().run(Single { orbits: self, row, tdb })
     }
 
+    /// The vector of [`Orbits::astrometric_motion_batch`] for one row, with its rate: the very numbers of a batch under the
+    /// same `isa`.
+    pub fn astrometric(&self, isa: Isa, row: usize, tdb: Instant<Tdb>, observer: State, sun: State) -> State {
+        isa.run(SingleAstrometric { single: Single { orbits: self, row, tdb }, observer, sun })
+    }
+
     /// Heliocentric positions (au) and velocities (au/day) of rows at one instant by two-body motion, ICRS axes, written
     /// a coordinate a slice; every slice as long as the range. Geometric: no light time.
     ///
@@ -180,6 +186,26 @@ impl Kernel for Single<'_> {
     }
 }
 
+/// One row as an observer sees it.
+struct SingleAstrometric<'a> {
+    single: Single<'a>,
+    observer: State,
+    sun: State,
+}
+
+impl Kernel for SingleAstrometric<'_> {
+    type Output = State;
+
+    #[inline(always)]
+    fn run<A: Arithmetic>(self) -> State {
+        let State { position: p, velocity: v } = self.single.run::<A>();
+        let s = [0, 1, 2].map(|axis| self.sun.position[axis] - self.observer.position[axis]);
+        let (position, light_time) = when_light_left::<A>(p, v, s, self.sun.velocity);
+        let velocity = rate_of(position, p, v, light_time, self.sun.velocity, self.observer.velocity);
+        State { position, velocity }
+    }
+}
+
 struct Heliocentric<'a> {
     orbits: &'a Orbits,
     rows: Range<usize>,
@@ -227,7 +253,6 @@ impl Kernel for Astrometric<'_> {
 
     #[inline(always)]
     fn run<A: Arithmetic>(mut self) {
-        const LIGHT_TIME_AU_D: f64 = LIGHT_TIME_AU_S / SECONDS_PER_DAY;
         let (day, fraction) = self.tdb.mjd_parts();
         let mut block = Block::new();
         let total = self.rows.len();
@@ -244,23 +269,7 @@ impl Kernel for Astrometric<'_> {
             for i in 0..n {
                 let p = [0, 1, 2].map(|axis| block.position[axis][i]);
                 let v = [0, 1, 2].map(|axis| block.velocity[axis][i]);
-                let (pull, turn) = derivatives(p, v);
-                let mut at = [p[0] + s[0], p[1] + s[1], p[2] + s[2]];
-                let mut light_time = 0.0;
-                for _ in 0..3 {
-                    light_time = LIGHT_TIME_AU_D * (at[0] * at[0] + at[1] * at[1] + at[2] * at[2]).sqrt();
-                    let second = 0.5 * light_time * pull;
-                    at = [0, 1, 2].map(|axis| {
-                        // The second and third derivatives are −pull·p and −pull·(v − turn·p); the Sun moves straight.
-                        let third = A::multiply_add(
-                            light_time * (1.0 / 3.0),
-                            A::multiply_add(-turn, p[axis], v[axis]),
-                            -p[axis],
-                        );
-                        let slope = A::multiply_add(second, third, -(v[axis] + sun_velocity[axis]));
-                        A::multiply_add(light_time, slope, p[axis] + s[axis])
-                    });
-                }
+                let (at, light_time) = when_light_left::<A>(p, v, s, sun_velocity);
                 light_times[i] = light_time;
                 for axis in 0..3 {
                     out[axis][i] = at[axis];
@@ -274,26 +283,54 @@ impl Kernel for Astrometric<'_> {
                     let p = [0, 1, 2].map(|axis| block.position[axis][i]);
                     let v = [0, 1, 2].map(|axis| block.velocity[axis][i]);
                     let d = [0, 1, 2].map(|axis| out[axis][i]);
-                    let (pull, turn) = derivatives(p, v);
-                    let t = light_times[i];
-                    // The body's barycentric velocity when the light left, and the share by which light time shortens.
-                    let left = [0, 1, 2].map(|axis| {
-                        let bend = p[axis] - 0.5 * t * (v[axis] - turn * p[axis]);
-                        v[axis] + sun_velocity[axis] + pull * t * bend
-                    });
-                    let observer = self.observer.velocity;
-                    let distance = dot(d, d).sqrt();
-                    let receding = dot(d, left) / distance;
-                    let shortening = (receding - dot(d, observer) / distance) * LIGHT_TIME_AU_D
-                        / (1.0 + LIGHT_TIME_AU_D * receding);
+                    let rate_at = rate_of(d, p, v, light_times[i], sun_velocity, self.observer.velocity);
                     for axis in 0..3 {
-                        rate[axis][done + i] = left[axis] * (1.0 - shortening) - observer[axis];
+                        rate[axis][done + i] = rate_at[axis];
                     }
                 }
             }
             done += n;
         }
     }
+}
+
+const LIGHT_TIME_AU_D: f64 = LIGHT_TIME_AU_S / SECONDS_PER_DAY;
+
+/// Where a body of the heliocentric state `p`, `v` was, from the observer, when the light left it, and the light time in
+/// days; `s` from the observer to the Sun, which moves straight.
+#[inline(always)]
+fn when_light_left<A: Arithmetic>(p: Vector, v: Vector, s: Vector, sun_velocity: Vector) -> (Vector, f64) {
+    let (pull, turn) = derivatives(p, v);
+    let mut at = [p[0] + s[0], p[1] + s[1], p[2] + s[2]];
+    let mut light_time = 0.0;
+    for _ in 0..3 {
+        light_time = LIGHT_TIME_AU_D * (at[0] * at[0] + at[1] * at[1] + at[2] * at[2]).sqrt();
+        let second = 0.5 * light_time * pull;
+        at = [0, 1, 2].map(|axis| {
+            // The second and third derivatives are −pull·p and −pull·(v − turn·p).
+            let third =
+                A::multiply_add(light_time * (1.0 / 3.0), A::multiply_add(-turn, p[axis], v[axis]), -p[axis]);
+            let slope = A::multiply_add(second, third, -(v[axis] + sun_velocity[axis]));
+            A::multiply_add(light_time, slope, p[axis] + s[axis])
+        });
+    }
+    (at, light_time)
+}
+
+/// Rate of the vector `d` of [`when_light_left`]; `t` its light time.
+#[inline(always)]
+fn rate_of(d: Vector, p: Vector, v: Vector, t: f64, sun_velocity: Vector, observer: Vector) -> Vector {
+    let (pull, turn) = derivatives(p, v);
+    // The body's barycentric velocity when the light left, and the share by which light time shortens.
+    let left = [0, 1, 2].map(|axis| {
+        let bend = p[axis] - 0.5 * t * (v[axis] - turn * p[axis]);
+        v[axis] + sun_velocity[axis] + pull * t * bend
+    });
+    let distance = dot(d, d).sqrt();
+    let receding = dot(d, left) / distance;
+    let shortening =
+        (receding - dot(d, observer) / distance) * LIGHT_TIME_AU_D / (1.0 + LIGHT_TIME_AU_D * receding);
+    [0, 1, 2].map(|axis| left[axis] * (1.0 - shortening) - observer[axis])
 }
 
 /// GM/r³ and 3 (p·v)/r² of a heliocentric state.

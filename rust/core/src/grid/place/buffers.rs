@@ -4,7 +4,7 @@
 //! runs them on whole registers.
 
 use super::columns::{PLACE_AIRMASS, PlaceColumn, PlaceColumns};
-use crate::astrometry::{Observer, Sky, StarColumns, star_direction};
+use crate::astrometry::{Observer, Sky, StarColumns, near_direction, star_direction};
 use crate::constants::{EARTH_ROTATION_RAD_PER_S, RADIANS_PER_DEGREE};
 use crate::horizon::Latitude;
 use crate::math::dispatch::{Arithmetic, Isa, Kernel};
@@ -26,6 +26,8 @@ pub(super) type Directions = [Numbers; 3];
 pub(in crate::grid) struct Buffers {
     /// Proper direction on the axes of the GCRS.
     pub direction: Directions,
+    /// Distance travelled by the light, au, of rows of orbits.
+    pub distance_au: Numbers,
     /// The same towards north, east and zenith.
     pub local: Directions,
     /// The celestial intermediate pole, the Moon and the Sun on the axes of the GCRS.
@@ -42,9 +44,10 @@ pub(in crate::grid) struct Buffers {
 impl Buffers {
     pub fn new() -> Box<Self> {
         let none = [[f64::NAN; ROWS]; 3];
-        let [topocentric, observed] = [[f64::NAN; ROWS]; 2];
+        let [distance_au, topocentric, observed] = [[f64::NAN; ROWS]; 3];
         Box::new(Buffers {
             direction: none,
+            distance_au,
             local: none,
             pole: none,
             moon: none,
@@ -62,8 +65,8 @@ impl Buffers {
             isa.run(Altitudes { buffers: self, refraction: observer.refraction, rows });
         }
         let latitude = Latitude::new(observer.site.latitude());
-        for (column, values) in &mut out.columns {
-            let sky_model = out.sky_model;
+        let sky_model = out.sky_model;
+        for (column, values) in out.columns.iter_mut().filter(|(column, _)| !column.is_of_looks()) {
             isa.run(WriteColumn { column: *column, buffers: self, latitude, sky_model, out: values });
         }
     }
@@ -108,6 +111,34 @@ impl Kernel for StarsUnderOneSky<'_> {
             let direction = star_direction(&stars.star(row), &sky);
             [x[row], y[row], z[row]] = direction;
             [north[row], east[row], zenith[row]] = rotate(&matrix, direction);
+        }
+    }
+}
+
+/// The rest of the chain of many near bodies under one sky, from the vectors (au) in `buffers.direction`.
+pub(super) struct NearUnderOneSky<'a> {
+    pub sky: &'a Sky,
+    pub rows: std::ops::Range<usize>,
+    pub buffers: &'a mut Buffers,
+}
+
+impl Kernel for NearUnderOneSky<'_> {
+    type Output = ();
+
+    #[inline(always)]
+    fn run<A: Arithmetic>(self) {
+        let (first, count) = (self.rows.start, self.rows.len());
+        let [x, y, z] = &mut self.buffers.direction;
+        let [x, y, z] = [x, y, z].map(|c| &mut c[first..][..count]);
+        let [north, east, zenith] = &mut self.buffers.local;
+        let [north, east, zenith] = [north, east, zenith].map(|c| &mut c[first..][..count]);
+        let distance_au = &mut self.buffers.distance_au[first..][..count];
+        let (sky, matrix): (Sky, Matrix) = (*self.sky, self.sky.local);
+        for row in 0..count {
+            let seen = near_direction([x[row], y[row], z[row]], &sky);
+            distance_au[row] = seen.light_distance_au;
+            [x[row], y[row], z[row]] = seen.direction;
+            [north[row], east[row], zenith[row]] = rotate(&matrix, seen.direction);
         }
     }
 }
@@ -232,6 +263,8 @@ impl Kernel for WriteColumn<'_> {
                     out[row] = sky_brightness(&self.sky_model, zenith[row], Some(moon));
                 }
             }
+            // Written by `looks`.
+            _ => {}
         }
     }
 }

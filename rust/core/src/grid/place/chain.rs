@@ -1,9 +1,11 @@
 //! The chain of a block's rows under one sky.
 
-use super::buffers::{Buffers, StarsUnderOneSky, fill, set};
+use super::buffers::{Buffers, NearUnderOneSky, StarsUnderOneSky, fill, set};
 use super::columns::{PlaceColumn, PlaceColumns};
+use super::looks;
 use crate::astrometry::{Observer, Sky, Targets, body_direction, star_direction};
 use crate::ephemeris::Body;
+use crate::ephemeris::orbits::Orbits;
 use crate::error::Status;
 use crate::math::dispatch::Isa;
 use crate::math::vector::{Vector, rotate};
@@ -42,6 +44,7 @@ impl Chain<'_> {
                 set(&mut buffers.direction, rows.start, direction);
                 set(&mut buffers.local, rows.start, rotate(&sky.local, direction));
             }
+            Targets::Orbits(orbits) => self.orbits(orbits, sky, target, rows.clone(), buffers, out),
             Targets::Bodies(bodies) => {
                 for (row, body) in rows.clone().zip(&bodies[target..]) {
                     let direction = self.body(*body, sky).unwrap_or_else(|status| {
@@ -52,6 +55,40 @@ impl Chain<'_> {
                     set(&mut buffers.local, row, rotate(&sky.local, direction));
                 }
             }
+        }
+        looks::fill(self, sky, target, rows, out);
+    }
+
+    /// Directions of orbits from row `target` on, under one sky.
+    fn orbits(
+        &self,
+        orbits: &Orbits,
+        sky: &Sky,
+        target: usize,
+        rows: Range<usize>,
+        buffers: &mut Buffers,
+        out: &mut PlaceColumns<'_>,
+    ) {
+        let tdb = sky.tdb();
+        let sun = match self.observer.ephemeris.state(Body::Sun, tdb) {
+            Ok(sun) => sun,
+            Err(bad) => {
+                fill(&mut buffers.direction, rows.clone(), [f64::NAN; 3]);
+                fill(&mut buffers.local, rows.clone(), [f64::NAN; 3]);
+                for (status, target) in out.status[rows].iter_mut().zip(target..) {
+                    let own = orbits.status(target);
+                    *status = if own.is_bad() { own } else { bad } as u8;
+                }
+                return;
+            }
+        };
+        let of_orbits = target..target + rows.len();
+        let vectors = buffers.direction.each_mut().map(|axis| &mut axis[rows.clone()]);
+        orbits.astrometric_batch(self.isa, of_orbits, tdb, sky.observer_au, sun, vectors);
+        self.isa.run(NearUnderOneSky { sky, rows: rows.clone(), buffers });
+        let note = sky.note();
+        for (row, target) in rows.zip(target..) {
+            out.status[row] = orbits.status_at(target, tdb, buffers.distance_au[row]).worst(note) as u8;
         }
     }
 

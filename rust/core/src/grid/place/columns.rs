@@ -34,6 +34,28 @@ pub enum PlaceColumn {
     /// Brightness of the sky with the Moon in it, V magnitudes a square arcsecond, by
     /// [`sky_brightness`](crate::windows::sky_brightness); NaN below the horizon. Twilight is not in it.
     SkyBrightnessMagArcsec2,
+    /// Distance travelled by the light that arrives now, au; from here on NaN for a catalogue.
+    DistanceAu,
+    /// Distance from the Sun, au.
+    HeliocentricDistanceAu,
+    /// Angle at the body between the Sun and the observer, degrees.
+    PhaseAngleDeg,
+    /// Angle at the observer between the Sun and the body, degrees.
+    ElongationDeg,
+    /// Apparent V magnitude.
+    MagnitudeV,
+    /// Motion among the stars, arcseconds a minute.
+    RateArcsecMin,
+    /// Its direction from the north of the ICRS through the east, degrees in [0, 360).
+    MotionPositionAngleDeg,
+    /// Illuminated fraction of the disc.
+    IlluminatedFraction,
+    /// Angular diameter of the equator, arcseconds.
+    AngularDiameterArcsec,
+    /// Position angle of the middle of the bright limb from the north of date through the east, degrees.
+    BrightLimbPositionAngleDeg,
+    /// Days since the last new Moon; NaN for all but the Moon.
+    MoonAgeD,
 }
 
 /// The formula behind [`PlaceColumn::Airmass`].
@@ -41,7 +63,7 @@ pub const PLACE_AIRMASS: AirmassModel = AirmassModel::KastenYoung1989;
 
 impl PlaceColumn {
     /// Every column.
-    pub const ALL: [PlaceColumn; 11] = [
+    pub const ALL: [PlaceColumn; 22] = [
         PlaceColumn::AltitudeDeg,
         PlaceColumn::AzimuthDeg,
         PlaceColumn::HourAngleDeg,
@@ -53,6 +75,17 @@ impl PlaceColumn {
         PlaceColumn::AzimuthRateArcsecS,
         PlaceColumn::ParallacticAngleRateArcsecS,
         PlaceColumn::SkyBrightnessMagArcsec2,
+        PlaceColumn::DistanceAu,
+        PlaceColumn::HeliocentricDistanceAu,
+        PlaceColumn::PhaseAngleDeg,
+        PlaceColumn::ElongationDeg,
+        PlaceColumn::MagnitudeV,
+        PlaceColumn::RateArcsecMin,
+        PlaceColumn::MotionPositionAngleDeg,
+        PlaceColumn::IlluminatedFraction,
+        PlaceColumn::AngularDiameterArcsec,
+        PlaceColumn::BrightLimbPositionAngleDeg,
+        PlaceColumn::MoonAgeD,
     ];
 
     /// The word for this column.
@@ -69,6 +102,17 @@ impl PlaceColumn {
             PlaceColumn::AzimuthRateArcsecS => "azimuth_rate_arcsec_s",
             PlaceColumn::ParallacticAngleRateArcsecS => "parallactic_angle_rate_arcsec_s",
             PlaceColumn::SkyBrightnessMagArcsec2 => "sky_brightness_mag_arcsec2",
+            PlaceColumn::DistanceAu => "distance_au",
+            PlaceColumn::HeliocentricDistanceAu => "heliocentric_distance_au",
+            PlaceColumn::PhaseAngleDeg => "phase_angle_deg",
+            PlaceColumn::ElongationDeg => "elongation_deg",
+            PlaceColumn::MagnitudeV => "magnitude_v",
+            PlaceColumn::RateArcsecMin => "rate_arcsec_min",
+            PlaceColumn::MotionPositionAngleDeg => "motion_position_angle_deg",
+            PlaceColumn::IlluminatedFraction => "illuminated_fraction",
+            PlaceColumn::AngularDiameterArcsec => "angular_diameter_arcsec",
+            PlaceColumn::BrightLimbPositionAngleDeg => "bright_limb_position_angle_deg",
+            PlaceColumn::MoonAgeD => "moon_age_d",
         }
     }
 

@@ -3,6 +3,7 @@
 mod buffers;
 mod chain;
 mod columns;
+mod looks;
 
 use self::buffers::fill;
 pub(super) use self::buffers::{Buffers, ROWS};
@@ -104,6 +105,7 @@ impl Job<'_> {
                     self.chain.directions(sky, target, range, &mut space.buffers, &mut out);
                 }
                 &Err(bad) => {
+                    looks::clear(&mut out, range.clone());
                     fill(&mut space.buffers.direction, range.clone(), [f64::NAN; 3]);
                     fill(&mut space.buffers.local, range.clone(), [f64::NAN; 3]);
                     for (status, target) in out.status[range].iter_mut().zip(target..) {

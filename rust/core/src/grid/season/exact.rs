@@ -2,7 +2,7 @@
 
 use super::columns::{NightSummary, Wanted};
 use super::night::Night;
-use crate::astrometry::{Observer, Targets};
+use crate::astrometry::{Moving, Observer, Targets};
 use crate::error::Status;
 use crate::windows::intervals::{Interval, IntervalSet};
 use crate::windows::{LimitedSpan, TargetWindows, Window, Workspace};
@@ -63,10 +63,10 @@ impl ExactNights {
         Some(&self.night)
     }
 
-    /// What is wanted of a body's windows on a night.
-    pub fn body(
+    /// What is wanted of a moving target's windows on a night.
+    pub fn moving(
         &mut self,
-        body: crate::ephemeris::Body,
+        target: Moving<'_>,
         days: &crate::events::Days<'_>,
         night: &Night,
         shortest_s: f64,
@@ -74,6 +74,6 @@ impl ExactNights {
     ) -> Option<NightSummary> {
         let observer = *days.observer();
         self.of_night(&observer, night, shortest_s)?;
-        super::bodies::summary(body, days, night, &self.night, &self.windows, wanted)
+        super::movers::summary(target, days, night, &self.night, &self.windows, wanted)
     }
 }

@@ -2,14 +2,14 @@
 //!
 //! Nights are taken a few weeks at a time, targets a block at a time. In such a tile the stars' directions
 //! are computed for the first and the last night and interpolated, and the loop of `kernel` does the
-//! rest; it marks the few stars that it cannot be sure of, which get the exact windows. Bodies, and limits
-//! that the loop does not know, go the exact way altogether.
+//! rest; it marks the few stars that it cannot be sure of, which get the exact windows. Targets that
+//! move, and limits that the loop does not know, go the exact way altogether.
 
-mod bodies;
 mod columns;
 mod detail;
 mod exact;
 mod kernel;
+mod movers;
 mod night;
 mod tile;
 

@@ -200,13 +200,14 @@ impl<'a> Season<'a> {
     ) {
         match self.targets {
             Targets::Catalog(catalog) => self.stars(catalog, weeks, span, &mut tile, space),
-            Targets::Bodies(bodies) => {
+            Targets::Bodies(_) | Targets::Orbits(_) => {
                 for index in 0..tile.count {
                     let row = tile.first + index;
+                    let Some(target) = self.targets.moving(row) else { continue };
                     space.exact.compute(self.targets, row, span);
                     for (night, columns) in weeks.iter().zip(&mut tile.nights) {
                         let shortest_s = self.shortest_s(row);
-                        let summary = space.exact.body(bodies[row], days, night, shortest_s, &self.wanted);
+                        let summary = space.exact.moving(target, days, night, shortest_s, &self.wanted);
                         let good = !self.status(row).is_bad();
                         NightSummary::write(summary.as_ref().filter(|_| good), columns, index);
                     }

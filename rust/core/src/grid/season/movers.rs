@@ -1,8 +1,9 @@
-//! A body of the solar system on one night: what its windows do not say.
+//! A target that moves on one night: what its windows do not say.
 
 use super::columns::{NightSummary, Wanted};
 use super::detail::mjd;
 use super::night::Night;
+use crate::astrometry::Moving;
 use crate::constants::SECONDS_PER_DAY;
 use crate::ephemeris::Body;
 use crate::events::{Arc, BodyArc, DayPath, Days};
@@ -14,10 +15,10 @@ use crate::windows::intervals::IntervalSet;
 /// Pieces into which a window is cut to bracket the nearest approach to the Moon: an hour or two each.
 const PIECES: usize = 12;
 
-/// What is wanted of a body's windows on a night, which are seconds from its middle; `exact` are those of
+/// What is wanted of a target's windows on a night, which are seconds from its middle; `exact` are those of
 /// the weeks around it. `None` when the ephemeris does not reach.
 pub(super) fn summary(
-    body: Body,
+    target: Moving<'_>,
     days: &Days<'_>,
     night: &Night,
     windows: &IntervalSet,
@@ -36,7 +37,7 @@ pub(super) fn summary(
         let mut nearest = f64::INFINITY;
         for &(index, arc) in &arcs {
             let mut culminations = Vec::new();
-            days.body(index, body).ok()?.culminations(arc, &mut culminations);
+            days.body(index, target).ok()?.culminations(arc, &mut culminations);
             for culmination in culminations.iter().filter(|culmination| culmination.upper) {
                 let seconds = arc.instant(culmination.at).seconds_since(night.middle);
                 if seconds.abs() < nearest.abs() {
@@ -53,7 +54,7 @@ pub(super) fn summary(
     }
     if wanted.moon_separation_min && !windows.is_empty() {
         for &(index, arc) in &arcs {
-            let paths = (days.body(index, body).ok()?, days.body(index, Body::Moon).ok()?);
+            let paths = (days.body(index, target).ok()?, days.body(index, Body::Moon).ok()?);
             for window in windows.iter() {
                 let fraction =
                     |seconds: f64| arc.fraction(night.middle.plus_seconds(seconds)).clamp(0.0, 1.0);
