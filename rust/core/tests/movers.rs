@@ -169,7 +169,7 @@ fn asteroids_are_placed_where_jpl_has_them() {
             let error = angle(seen, local) / RADIANS_PER_ARCSECOND;
             println!("{code} after {days} d: {error:.6} arcsec, {}", status[0]);
             assert!(error < gate, "{code} after {days}: {error}");
-            assert!((found[2][0] / expected.light_distance_au - 1.0).abs() < 1e-5);
+            assert!((found[2][0] / expected.light_distance_au - 1.0).abs() < 2e-5 * gate);
             assert!(status[0] == Status::FarFromEpoch as u8 || error < 5.0);
             assert!(status[0] == 0 || days > 10.0);
         }

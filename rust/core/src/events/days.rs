@@ -1,8 +1,8 @@
 //! A span of UTC as the days of TT that it touches.
 
 use super::arc::{Arc, StarArc};
-use super::moving::{BODY_NODES, BodyArc};
-use crate::astrometry::{Moving, Observer, Sky, Targets, Track, TrackPlan};
+use super::moving::{BodyArc, MovingNodes};
+use crate::astrometry::{Moving, Observer, Targets, Track, TrackPlan};
 use crate::error::{Error, Result, Status};
 use crate::time::{Instant, Tai, Utc};
 
@@ -17,7 +17,7 @@ pub struct Days<'a> {
     pub stop: Utc,
     start_tai: Instant<Tai>,
     stop_tai: Instant<Tai>,
-    skies: Vec<Vec<Sky>>,
+    nodes: Vec<MovingNodes>,
 }
 
 /// The two ends of a span on the uniform scale.
@@ -92,7 +92,7 @@ impl<'a> Days<'a> {
             })?;
             arcs.push(arc);
         }
-        Ok(Days { arcs, start, stop, start_tai, stop_tai, skies: Vec::new() })
+        Ok(Days { arcs, start, stop, start_tai, stop_tai, nodes: Vec::new() })
     }
 
     /// Prepares what targets need that move; a catalogue does without.
@@ -100,13 +100,11 @@ impl<'a> Days<'a> {
     /// # Errors
     /// When the span leaves the ephemeris.
     pub fn prepare(&mut self, targets: &Targets<'_>) -> Result<()> {
-        if !matches!(targets, Targets::Catalog(_)) && self.skies.is_empty() {
-            self.skies = self
-                .arcs
-                .iter()
-                .map(|arc| arc.skies::<BODY_NODES>())
-                .collect::<std::result::Result<_, Status>>()
-                .map_err(|status| Error::invalid("the span", status.word(), "a span within the ephemeris"))?;
+        if !matches!(targets, Targets::Catalog(_)) && self.nodes.is_empty() {
+            self.nodes =
+                self.arcs.iter().map(MovingNodes::new).collect::<std::result::Result<_, Status>>().map_err(
+                    |status| Error::invalid("the span", status.word(), "a span within the ephemeris"),
+                )?;
         }
         Ok(())
     }
@@ -160,6 +158,10 @@ impl<'a> Days<'a> {
         index: usize,
         target: impl Into<Moving<'t>>,
     ) -> std::result::Result<BodyArc, Status> {
-        BodyArc::new(&self.arcs[index], &self.skies[index], target)
+        let (arc, nodes) = (&self.arcs[index], &self.nodes[index]);
+        match target.into() {
+            Moving::Body(body) => BodyArc::new(arc, &nodes.skies, body),
+            Moving::Orbit(orbits, row) => Ok(BodyArc::of_orbit(arc, nodes, orbits, row)),
+        }
     }
 }

@@ -17,7 +17,7 @@ pub use batch::{BATCH, BatchSpace, star_events};
 pub(crate) use crossing::STAR_REACH_RAD;
 pub use crossing::{Crossing, Culmination, DayPath};
 pub use days::{Days, span_ends, track_for, track_plan, utc_text};
-pub use moving::{BODY_ARC_ERROR_RAD, BODY_NODES, BodyArc, directions_at};
+pub use moving::{BODY_ARC_ERROR_RAD, BODY_NODES, BodyArc, MovingNodes, directions_at};
 pub use passages::{Event, EventKind, Passage, rise_transit_set, rise_transit_set_with};
 pub(crate) use passing::{Passing, ROUNDING_S, altitude_passing, passing};
 pub use scatter::horizon_scatter;

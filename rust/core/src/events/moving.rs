@@ -6,10 +6,13 @@
 //! still worth is counted into [`DayPath::error_rad`](super::DayPath::error_rad), and so is the drift of two-body motion.
 
 use super::arc::Arc;
-use crate::astrometry::{Moving, Sky};
+use crate::astrometry::{Sky, body_direction, near_direction};
 use crate::constants::RADIANS_PER_MILLIARCSECOND;
+use crate::ephemeris::Body;
+use crate::ephemeris::orbits::{Look, Orbits};
 use crate::error::Status;
 use crate::math::chebyshev::{Chebyshev, ChebyshevVector};
+use crate::math::dispatch::Isa;
 use crate::math::vector::{Vector, norm, rotate, sub};
 
 /// Error of the compact ephemeris in direction, radians, as its tests hold it.
@@ -33,35 +36,72 @@ pub struct BodyArc {
     pub error_rad: f64,
 }
 
+/// What the paths of all orbits on a day share: the observer's skies at the nodes, then at both ends of the day.
+#[derive(Debug, Clone)]
+pub struct MovingNodes {
+    /// The skies at the nodes, from the end to the beginning.
+    pub skies: Vec<Sky>,
+    looks: Vec<Look>,
+}
+
+impl MovingNodes {
+    /// On a day.
+    ///
+    /// # Errors
+    /// [`Status::OutsideEphemeris`].
+    pub fn new(arc: &Arc<'_>) -> std::result::Result<Self, Status> {
+        let skies = arc.skies::<BODY_NODES>()?;
+        let looks = skies
+            .iter()
+            .chain(arc.skies_at_ends())
+            .map(|sky| {
+                let tdb = sky.tdb();
+                let sun = arc.observer.ephemeris.state(Body::Sun, tdb)?;
+                Ok(Look { tdb, observer_au: sky.observer_au, sun })
+            })
+            .collect::<std::result::Result<_, Status>>()?;
+        Ok(MovingNodes { skies, looks })
+    }
+}
+
 impl BodyArc {
     /// From the skies of [`Arc::skies`]`::<BODY_NODES>`.
     ///
     /// # Errors
-    /// [`Status::OutsideEphemeris`], or the status of a row without an orbit.
-    pub fn new<'t>(
-        arc: &Arc<'_>,
-        skies: &[Sky],
-        target: impl Into<Moving<'t>>,
-    ) -> std::result::Result<Self, Status> {
-        let target = target.into();
-        let mut seen = Seen { nearest_au: f64::INFINITY };
-        let local = series_of(&seen.directions(arc, skies, target)?);
-        let ends = seen.directions(arc, arc.skies_at_ends(), target)?;
+    /// [`Status::OutsideEphemeris`].
+    pub fn new(arc: &Arc<'_>, skies: &[Sky], body: Body) -> std::result::Result<Self, Status> {
+        let directions = directions_at(arc, skies, body)?;
+        let ends = directions_at(arc, arc.skies_at_ends(), body)?;
         let ends = [ends[0], ends[1]];
-        let (own_error_rad, note) = match target {
-            Moving::Body(_) => (BODY_ARC_ERROR_RAD, Status::Ok),
-            Moving::Orbit(orbits, row) => {
-                // It grows away from the epoch: within the day it is largest at an end.
-                let drift = |sky: &Sky| {
-                    let tdb = sky.tdb();
-                    let error = orbits.drift_au(row, tdb) / seen.nearest_au;
-                    (error, orbits.status_at(row, tdb, seen.nearest_au))
-                };
-                let [(start, note), (stop, later)] = arc.skies_at_ends().each_ref().map(drift);
-                (start.max(stop), note.worst(later))
-            }
+        let local = series_of(&directions);
+        let error_rad = BODY_ARC_ERROR_RAD + left_out(&local, &ends);
+        Ok(BodyArc { local, ends, note: Status::Ok, error_rad })
+    }
+
+    /// Of a row of orbits.
+    pub fn of_orbit(arc: &Arc<'_>, nodes: &MovingNodes, orbits: &Orbits, row: usize) -> Self {
+        let mut vectors = [[0.0; 3]; BODY_NODES + 2];
+        orbits.astrometric_at(Isa::best(), row, &nodes.looks, &mut vectors);
+        let mut nearest_au = f64::INFINITY;
+        let mut see = |sky: &Sky, vector: Vector| {
+            let seen = near_direction(vector, sky);
+            nearest_au = nearest_au.min(seen.light_distance_au);
+            rotate(&sky.local, seen.direction)
         };
-        Ok(BodyArc { error_rad: own_error_rad + left_out(&local, &ends), local, ends, note })
+        let samples = std::array::from_fn(|j| see(&nodes.skies[j], vectors[j]));
+        let local = ChebyshevVector::through(0.0, 1.0, &samples);
+        let [start, stop] = arc.skies_at_ends();
+        let ends = [see(start, vectors[BODY_NODES]), see(stop, vectors[BODY_NODES + 1])];
+        // The drift grows away from the epoch: within the day it is largest at an end.
+        let at_ends = [nodes.looks[BODY_NODES].tdb, nodes.looks[BODY_NODES + 1].tdb];
+        let drift_au = at_ends.map(|tdb| orbits.drift_au(row, tdb)).into_iter().fold(0.0, f64::max);
+        let note = at_ends.map(|tdb| orbits.status_at(row, tdb, nearest_au));
+        BodyArc {
+            error_rad: drift_au / nearest_au + left_out(&local, &ends),
+            local,
+            ends,
+            note: note[0].worst(note[1]),
+        }
     }
 
     /// The series of one component: 0 north, 1 east, 2 zenith.
@@ -87,39 +127,14 @@ fn left_out(local: &ChebyshevVector<BODY_NODES, 3>, ends: &[Vector; 2]) -> f64 {
 ///
 /// # Errors
 /// [`Status::OutsideEphemeris`].
-pub fn directions_at<'t>(
-    arc: &Arc<'_>,
-    skies: &[Sky],
-    target: impl Into<Moving<'t>>,
-) -> std::result::Result<Vec<Vector>, Status> {
-    Seen { nearest_au: f64::INFINITY }.directions(arc, skies, target.into())
-}
-
-/// How near a target was while it was looked at.
-struct Seen {
-    nearest_au: f64,
-}
-
-impl Seen {
-    fn directions(
-        &mut self,
-        arc: &Arc<'_>,
-        skies: &[Sky],
-        target: Moving<'_>,
-    ) -> std::result::Result<Vec<Vector>, Status> {
-        skies
-            .iter()
-            .map(|sky| {
-                let seen = target.direction(arc.observer.ephemeris, sky)?;
-                self.nearest_au = self.nearest_au.min(seen.light_distance_au);
-                Ok(rotate(&sky.local, seen.direction))
-            })
-            .collect()
-    }
+pub fn directions_at(arc: &Arc<'_>, skies: &[Sky], body: Body) -> std::result::Result<Vec<Vector>, Status> {
+    skies
+        .iter()
+        .map(|sky| Ok(rotate(&sky.local, body_direction(body, arc.observer.ephemeris, sky)?.direction)))
+        .collect()
 }
 
 /// The series over the day through samples at its Chebyshev nodes.
 fn series_of<const N: usize>(samples: &[Vector]) -> ChebyshevVector<N, 3> {
-    let mut next = samples.iter();
-    ChebyshevVector::fit(0.0, 1.0, |_| *next.next().expect("as many samples as nodes"))
+    ChebyshevVector::through(0.0, 1.0, samples.try_into().expect("as many samples as nodes"))
 }

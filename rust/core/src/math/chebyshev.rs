@@ -9,6 +9,7 @@
 //! section 6.3 for the discrete orthogonality behind the fit [from memory].
 
 use crate::math::bernstein::{self, Crossing, Crossings};
+use std::sync::OnceLock;
 
 /// Σ c_k T_k(u) by Clenshaw's summation. `u` in −1 to 1; the empty sum is 0.
 ///
@@ -53,12 +54,33 @@ pub fn node(j: usize, n: usize) -> f64 {
 pub fn fit(samples: &[f64], coefficients: &mut [f64]) {
     let n = samples.len();
     assert_eq!(n, coefficients.len(), "as many coefficients as samples");
-    // cos(π k (2j + 1) / 2n) is periodic in its numerator with period 4n: a table of sines is exact enough.
-    let cosine: Vec<f64> = (0..4 * n).map(|i| cosine_of_turn(i, 4 * n)).collect();
-    for (k, c) in coefficients.iter_mut().enumerate() {
-        let sum: f64 = samples.iter().enumerate().map(|(j, &y)| y * cosine[k * (2 * j + 1) % (4 * n)]).sum();
-        *c = sum * if k == 0 { 1.0 } else { 2.0 } / n as f64;
+    let made;
+    let cosine: &[f64] = match MATRICES.get(n) {
+        Some(matrix) => matrix.get_or_init(|| cosines(n)),
+        None => {
+            made = cosines(n);
+            &made
+        }
+    };
+    coefficients.fill(0.0);
+    for (j, &y) in samples.iter().enumerate() {
+        for (c, &cosine) in coefficients.iter_mut().zip(&cosine[j * n..][..n]) {
+            *c += y * cosine;
+        }
     }
+    for (k, c) in coefficients.iter_mut().enumerate() {
+        *c *= if k == 0 { 1.0 } else { 2.0 } / n as f64;
+    }
+}
+
+/// What [`fit`] multiplies so many samples by, made once: a series is fitted for every moving target a day.
+static MATRICES: [OnceLock<Vec<f64>>; 65] = [const { OnceLock::new() }; 65];
+
+/// cos(π k (2j + 1) / 2n), the n values of k for one j together. They are periodic in the numerator with period 4n: a
+/// table of so many is exact enough.
+fn cosines(n: usize) -> Vec<f64> {
+    let table: Vec<f64> = (0..4 * n).map(|i| cosine_of_turn(i, 4 * n)).collect();
+    (0..n).flat_map(|j| (0..n).map(move |k| k * (2 * j + 1) % (4 * n))).map(|i| table[i]).collect()
 }
 
 /// cos(2π i / n).
@@ -261,18 +283,18 @@ impl<const N: usize, const K: usize> ChebyshevVector<N, K> {
     /// The interpolating series of `f`, sampled at `N` Chebyshev nodes of `start` to `stop`, from the last to the first.
     pub fn fit(start: f64, stop: f64, mut f: impl FnMut(f64) -> [f64; K]) -> Self {
         let interval = Interval::new(start, stop);
-        let mut samples = [[0.0; N]; K];
-        for j in 0..N {
-            let sample = f(interval.abscissa(node(j, N)));
-            for k in 0..K {
-                samples[k][j] = sample[k];
-            }
-        }
+        let samples = std::array::from_fn(|j| f(interval.abscissa(node(j, N))));
+        Self::through(start, stop, &samples)
+    }
+
+    /// The interpolating series through samples at the `N` Chebyshev nodes of `start` to `stop`, from the last to the
+    /// first.
+    pub fn through(start: f64, stop: f64, samples: &[[f64; K]; N]) -> Self {
         let mut coefficients = [[0.0; N]; K];
-        for (samples, coefficients) in samples.iter().zip(&mut coefficients) {
-            fit(samples, coefficients);
+        for (k, coefficients) in coefficients.iter_mut().enumerate() {
+            fit(&samples.map(|sample| sample[k]), coefficients);
         }
-        ChebyshevVector { interval, coefficients }
+        ChebyshevVector { interval: Interval::new(start, stop), coefficients }
     }
 
     /// First and last abscissa.

@@ -22,6 +22,12 @@ impl Orbits {
         isa.run(SingleAstrometric { single: Single { orbits: self, row, tdb }, observer, sun })
     }
 
+    /// The vectors of [`Orbits::astrometric_batch`] for one row at many instants, each with its observer and Sun: the very
+    /// numbers of a batch under the same `isa`.
+    pub fn astrometric_at(&self, isa: Isa, row: usize, looks: &[Look], vectors: &mut [Vector]) {
+        isa.run(AtInstants { orbits: self, row, looks, vectors });
+    }
+
     /// Heliocentric positions (au) and velocities (au/day) of rows at one instant by two-body motion, ICRS axes, written
     /// a coordinate a slice; every slice as long as the range. Geometric: no light time.
     ///
@@ -77,6 +83,17 @@ impl Orbits {
     ) {
         isa.run(Astrometric { orbits: self, rows, tdb, observer, sun, direction, rate: Some(rate) });
     }
+}
+
+/// An instant at which an observer looks.
+#[derive(Debug, Clone, Copy)]
+pub struct Look {
+    /// The instant.
+    pub tdb: Instant<Tdb>,
+    /// Barycentric position of the observer, au.
+    pub observer_au: Vector,
+    /// Barycentric state of the Sun.
+    pub sun: State,
 }
 
 /// Rows worked on together: what a block needs between its loops stays in the first-level cache.
@@ -203,6 +220,56 @@ impl Kernel for SingleAstrometric<'_> {
         let (position, light_time) = when_light_left::<A>(p, v, s, self.sun.velocity);
         let velocity = rate_of(position, p, v, light_time, self.sun.velocity, self.observer.velocity);
         State { position, velocity }
+    }
+}
+
+/// One row at many instants.
+struct AtInstants<'a> {
+    orbits: &'a Orbits,
+    row: usize,
+    looks: &'a [Look],
+    vectors: &'a mut [Vector],
+}
+
+impl Kernel for AtInstants<'_> {
+    type Output = ();
+
+    #[inline(always)]
+    fn run<A: Arithmetic>(self) {
+        let AtInstants { orbits: o, row, looks, vectors } = self;
+        let (e, rate, since) = (o.eccentricity[row], o.rate[row], o.since_perihelion[row]);
+        let along = [0, 1, 2].map(|axis| o.along[axis][row]);
+        let across = [0, 1, 2].map(|axis| o.across[axis][row]);
+        for (looks, vectors) in looks.chunks(BLOCK).zip(vectors.chunks_mut(BLOCK)) {
+            let n = looks.len().min(vectors.len()).min(BLOCK);
+            let mut means = [0.0; BLOCK];
+            for (mean_at, look) in means.iter_mut().zip(looks) {
+                let (day, fraction) = look.tdb.mjd_parts();
+                let time = since + ((day - o.epoch_day[row]) + (fraction - o.epoch_fraction[row]));
+                *mean_at = mean::<A>(time, o.period[row], o.frequency[row]) * rate;
+            }
+            let (mut x, mut y, mut c0) = ([0.0; BLOCK], [0.0; BLOCK], [0.0; BLOCK]);
+            let (mut speed, mut open) = ([0.0; BLOCK], [0.0; BLOCK]);
+            for i in 0..n {
+                let (place, settled) = kepler::solve_quickly::<A>(e, means[i]);
+                (x[i], y[i], c0[i], speed[i]) = (place.x, place.y, place.c0, rate / place.r);
+                open[i] = if settled { 0.0 } else { 1.0 };
+            }
+            for i in 0..n {
+                if open[i] != 0.0 {
+                    let place = kepler::solve_safely(e, means[i]);
+                    (x[i], y[i], c0[i], speed[i]) = (place.x, place.y, place.c0, rate / place.r);
+                }
+                let (mut p, mut v) = ([0.0; 3], [0.0; 3]);
+                for axis in 0..3 {
+                    (p[axis], v[axis]) =
+                        component::<A>(x[i], y[i], c0[i], speed[i], along[axis], across[axis]);
+                }
+                let look = &looks[i];
+                let s = [0, 1, 2].map(|axis| look.sun.position[axis] - look.observer_au[axis]);
+                vectors[i] = when_light_left::<A>(p, v, s, look.sun.velocity).0;
+            }
+        }
     }
 }
 

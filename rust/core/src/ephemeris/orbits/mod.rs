@@ -24,6 +24,7 @@ pub mod table;
 #[cfg(test)]
 pub(crate) mod random;
 
+pub use batch::Look;
 pub use elements::Elements;
 pub use table::{Anomaly, Columns, Orbits, Slope};
 
