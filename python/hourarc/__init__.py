@@ -22,6 +22,7 @@ from .errors import HourarcError, HourarcWarning
 from .events import Event, Events, rise_transit_set
 from .geometry import position_angle, separation
 from .limits import LIMITS, Limits
+from .orbits import Orbits, RejectedLine
 from .place import PLACE_COLUMNS, Places, place
 from .results import STATUS_WORDS
 from .season import GRID_QUANTITIES, Grid, visibility_grid
@@ -47,8 +48,10 @@ __all__ = [
     "HourarcError",
     "HourarcWarning",
     "Limits",
+    "Orbits",
     "Orientation",
     "Places",
+    "RejectedLine",
     "SeasonSummary",
     "Site",
     "Window",

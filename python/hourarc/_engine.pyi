@@ -18,6 +18,7 @@ _Bytes = NDArray[np.uint8]
 __all__ = [
     "Bodies",
     "Catalog",
+    "Orbits",
     "Orientation",
     "Site",
     "airmass_model_words",
@@ -92,8 +93,38 @@ class Catalog:
 
 @final
 class Bodies:
-    def __new__(cls, words: list[str]) -> Bodies: ...
+    def __new__(cls, words: list[str], kernel: str | None) -> Bodies: ...
     def __len__(self) -> int: ...
+    @property
+    def ephemeris(self) -> str: ...
+
+@final
+class Orbits:
+    def __new__(
+        cls,
+        epoch_mjd_tt: _Floats,
+        eccentricity: _Floats,
+        inclination_deg: _Floats,
+        node_deg: _Floats,
+        perihelion_argument_deg: _Floats,
+        size_au: _Floats,
+        place: _Floats,
+        by_mean_anomaly: bool,
+        h_mag: _Floats,
+        slope_g: _Floats,
+        slope_g2: _Floats | None,
+    ) -> Orbits: ...
+    @staticmethod
+    def from_mpc(text: str) -> tuple[Orbits, list[str], list[tuple[int, int, int, str]]]: ...
+    @staticmethod
+    def from_rows(numbers: _Floats) -> Orbits: ...
+    def __len__(self) -> int: ...
+    @property
+    def status(self) -> _Bytes: ...
+    def rows(self) -> _Floats: ...
+    def elements(self) -> dict[str, _Floats]: ...
+    def advance(self, to_mjd_tt: float, workers: tuple[int, str]) -> Orbits: ...
+    def drift_au(self, mjd_tt: float) -> _Floats: ...
 
 @final
 class Orientation:
@@ -115,7 +146,7 @@ class Orientation:
 
 def place(
     site: Site,
-    targets: Catalog | Bodies,
+    targets: Catalog | Bodies | Orbits,
     orientation: Orientation,
     utc_ns: _Nanoseconds,
     columns: dict[str, _Floats],
@@ -125,7 +156,7 @@ def place(
 ) -> None: ...
 def rise_transit_set(
     site: Site,
-    targets: Catalog | Bodies,
+    targets: Catalog | Bodies | Orbits,
     orientation: Orientation,
     start_ns: int,
     stop_ns: int,
@@ -135,7 +166,7 @@ def rise_transit_set(
 def almanac(site: Site, orientation: Orientation, first_mjd: int, nights: int) -> dict[str, NDArray[Any]]: ...
 def windows(
     site: Site,
-    targets: Catalog | Bodies,
+    targets: Catalog | Bodies | Orbits,
     orientation: Orientation,
     start_ns: int,
     stop_ns: int,
@@ -164,7 +195,7 @@ def windows_after_gap(
 ) -> tuple[_Nanoseconds, _Nanoseconds, _Nanoseconds, NDArray[np.bool_]]: ...
 def visibility_grid(
     site: Site,
-    targets: Catalog | Bodies,
+    targets: Catalog | Bodies | Orbits,
     orientation: Orientation,
     first_mjd: int,
     nights: int,

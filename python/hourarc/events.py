@@ -12,6 +12,7 @@ from numpy.typing import NDArray
 from . import _engine
 from ._columns import Floats, scalar, workers
 from .errors import InvalidArgument
+from .orbits import Orbits
 from .orientation import Orientation, as_orientation
 from .results import STATUS_WORDS, Coded, ColumnResult, Ragged, words
 from .site import Site, as_site
@@ -125,7 +126,7 @@ class Events(Ragged, ColumnResult):
 
 def rise_transit_set(
     site: Site,
-    targets: Catalog | Bodies,
+    targets: Catalog | Bodies | Orbits,
     start: Any,
     stop: Any,
     *,

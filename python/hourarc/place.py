@@ -11,6 +11,7 @@ from numpy.typing import NDArray
 from . import _engine
 from ._columns import Floats, workers, writable
 from .errors import InvalidArgument, MissingColumn, UnknownName, WrongType
+from .orbits import Orbits
 from .orientation import Orientation, as_orientation
 from .results import STATUS_WORDS, Coded, ColumnResult, words
 from .site import Site, as_site
@@ -27,11 +28,27 @@ DEFAULT_COLUMNS = (
     "airmass",
     "parallactic_angle_deg",
 )
+LOOKS_COLUMNS = (
+    "distance_au",
+    "heliocentric_distance_au",
+    "phase_angle_deg",
+    "elongation_deg",
+    "magnitude_v",
+    "rate_arcsec_min",
+    "motion_position_angle_deg",
+    "illuminated_fraction",
+    "angular_diameter_arcsec",
+    "bright_limb_position_angle_deg",
+    "moon_age_d",
+)
+"""The columns of `place` that say how bodies of the solar system look; NaN for a `Catalog`."""
+
 PLACE_COLUMNS = (
     *DEFAULT_COLUMNS,
     "moon_separation_deg",
     "sun_separation_deg",
     "sky_brightness_mag_arcsec2",
+    *LOOKS_COLUMNS,
 )
 """Every column that `place` can compute; the first six are computed when nothing is said."""
 
@@ -63,6 +80,28 @@ class Places(ColumnResult):
     sky_brightness_mag_arcsec2: Floats
     """Brightness of the sky in V with the Moon in it, magnitudes a square arcsecond; NaN below the horizon.
     After Krisciunas & Schaefer 1991 (PASP 103, 1033), good to 0.1 to 0.25 mag; twilight is not in it."""
+    distance_au: Floats
+    """Distance travelled by the light that arrives now, au."""
+    heliocentric_distance_au: Floats
+    """Distance from the Sun, au; 0 for the Sun."""
+    phase_angle_deg: Floats
+    """Angle at the body between the Sun and the observer, degrees."""
+    elongation_deg: Floats
+    """Angle at the observer between the Sun and the body, degrees; topocentric, without aberration."""
+    magnitude_v: Floats
+    """Apparent V magnitude; NaN where it is unknown."""
+    rate_arcsec_min: Floats
+    """Motion among the stars as the site sees it, arcseconds a minute."""
+    motion_position_angle_deg: Floats
+    """Its direction, degrees from the north of the ICRS through east, 0 to 360."""
+    illuminated_fraction: Floats
+    """Illuminated fraction of the disc, 0 to 1."""
+    angular_diameter_arcsec: Floats
+    """Angular diameter of the equator, arcseconds; NaN for minor bodies."""
+    bright_limb_position_angle_deg: Floats
+    """Position angle of the bright limb's middle, degrees from the north of date through east."""
+    moon_age_d: Floats
+    """Days since the last new Moon; NaN for all but the Moon."""
     time: NDArray[np.datetime64]
     """The instants, UTC, datetime64[ns], in the shape they were given."""
     status: NDArray[np.uint8]
@@ -147,7 +186,7 @@ class Places(ColumnResult):
 
 def place(
     site: Site,
-    targets: Catalog | Bodies,
+    targets: Catalog | Bodies | Orbits,
     when: Any,
     *,
     columns: Iterable[str] | str | None = None,
@@ -174,6 +213,12 @@ def place(
     DE440 (`tests/test_accuracy_bodies.py`). Refraction is within 0.1″ of the published ray trace down to an
     altitude of 10° and within 0.1′ at the horizon (`tests/test_accuracy_refraction.py`); the real air
     scatters far more there.
+
+    Places of `Orbits` are of two-body motion with light time, deflection and aberration, within 1e-5″ of the
+    chain itself; how far that motion strays from the true one is said there, and by the status
+    ``far_from_epoch``. The last columns of `PLACE_COLUMNS` say how bodies look: all angles of the triangle
+    of Sun, body and site, the motion with the site's own; magnitudes by H and G, and of Sun, Moon and
+    planets by published formulae (0.01 to 0.1 mag).
 
     A target or an instant that cannot be computed (NaN, NaT, before 1960, outside 1900 to 2100) has NaN and a
     ``status`` of 16 or more; the others are untouched. A wrong call raises `HourarcError`.

@@ -52,6 +52,22 @@ COLUMNS: Mapping[str, Column] = {
     "sky_brightness_mag_arcsec2": Column(
         "mag / arcsec2", "phot.mag.sb;em.opt.V", "brightness of the sky with the Moon in it, V"
     ),
+    "distance_au": Column("AU", "pos.distance", "distance travelled by the light that arrives now"),
+    "heliocentric_distance_au": Column("AU", "pos.distance;pos.heliocentric", "distance from the Sun"),
+    "phase_angle_deg": Column("deg", "pos.phaseAng", "angle at the body between the Sun and the observer"),
+    "elongation_deg": Column("deg", "pos.angDistance", "angle at the observer between the Sun and the body"),
+    "magnitude_v": Column("mag", "phot.mag;em.opt.V", "apparent magnitude V"),
+    "rate_arcsec_min": Column("arcsec / min", "pos.pm", "motion among the stars as the site sees it"),
+    "motion_position_angle_deg": Column(
+        "deg", "pos.posAng;pos.pm", "direction of the motion, north through east"
+    ),
+    "illuminated_fraction": Column("", "phys.area;arith.ratio", "illuminated fraction of the disc"),
+    "angular_diameter_arcsec": Column("arcsec", "phys.angSize", "angular diameter of the equator"),
+    "bright_limb_position_angle_deg": Column(
+        "deg",
+        "pos.posAng",
+        "middle of the bright limb, north through east",
+    ),
     # events
     "kind": Column("", "meta.code", "rise, transit or set"),
     "computed_error_s": Column("s", "stat.error;time.epoch", "error of the computed instant"),
@@ -99,7 +115,7 @@ COLUMNS: Mapping[str, Column] = {
     "sunrise": Column("", "time.epoch", "sunrise, UTC"),
     "moonrise": Column("", "time.epoch", "first moonrise of the night, UTC"),
     "moonset": Column("", "time.epoch", "first moonset of the night, UTC"),
-    "moon_age_d": Column("d", "time.age", "days since the new Moon, at local mean midnight"),
+    "moon_age_d": Column("d", "time.age", "days since the last new Moon"),
     "moon_illuminated_fraction": Column(
         "", "phys.area;arith.ratio", "illuminated fraction, at local mean midnight"
     ),

@@ -12,6 +12,7 @@ from . import _engine
 from ._columns import Floats, workers, writable
 from .errors import InvalidArgument, MissingColumn, UnknownName, WrongType
 from .limits import Limits
+from .orbits import Orbits
 from .orientation import Orientation, as_orientation
 from .results import STATUS_WORDS, ColumnResult, words
 from .season_summary import SeasonSummary, SeasonTally
@@ -190,7 +191,7 @@ def _grid_again(quantities: dict[str, NDArray[Any]], about: dict[str, Any]) -> G
 
 def visibility_grid(
     site: Site,
-    targets: Catalog | Bodies,
+    targets: Catalog | Bodies | Orbits,
     first_night: Any,
     nights: int,
     limits: Limits | None = None,

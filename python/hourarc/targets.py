@@ -1,7 +1,8 @@
-"""Targets: rows of a catalogue, or bodies of the solar system. Every verb takes either."""
+"""Targets: rows of a catalogue, or bodies of the solar system. Every verb takes these and `Orbits`."""
 
 from __future__ import annotations
 
+import os
 from collections.abc import Iterable
 from typing import TYPE_CHECKING, Any
 
@@ -11,6 +12,7 @@ from numpy.typing import ArrayLike, NDArray
 from . import _engine, interop
 from ._columns import Floats, columns_of_one_length, read_only
 from .errors import InvalidArgument, UnknownName, WrongType
+from .orbits import Orbits
 from .results import FIRST_BAD_STATUS, STATUS_WORDS, words
 
 if TYPE_CHECKING:
@@ -141,22 +143,30 @@ class Catalog:
 
 
 class Bodies:
-    """The Sun, the Moon and the planets, by lower-case name, on the built-in compact ephemeris (1900–2100).
+    """The Sun, the Moon and the planets, by lower-case name.
 
-    The ephemeris is within 1 mas of DE440 for Sun and Moon and 5 mas for the planets
-    (`tests/test_accuracy_bodies.py`). Places are of the centre, with light time. Raises `UnknownName` for a
-    name that is not known, and says the nearest.
+    * ``names``: of `earth`, `jupiter`, ... the words that the message of `UnknownName` lists.
+    * ``ephemeris``: None is the built-in compact ephemeris (1900 to 2100), within 1 mas of DE440 for Sun and
+      Moon and 5 mas for the planets (`tests/test_accuracy_bodies.py`). Or the path of an SPK file such as
+      ``de440.bsp``, with segments of types 2 or 3: it is mapped into memory, and must not change while it is
+      in use. What a verb needs of Earth, Sun and Moon is then taken from it too, within the 1e-13 of
+      jplephem's reading of it (`tests/test_accuracy_kernel.py`).
+
+    Places are of the centre, with light time. A planet for which a kernel has only the barycentre of its
+    system is placed there. Raises `UnknownName` for a name that is not known, `TableError` for a file that
+    is no kernel, is damaged, or has no segments of a body, and OSError for one that cannot be opened.
 
     >>> Bodies(["sun", "moon", "mars"])
     """
 
-    __slots__ = ("_handle", "name")
+    __slots__ = ("_handle", "_path", "name")
 
     _handle: _engine.Bodies
+    _path: str | None
     name: NDArray[np.str_]
     """The name of each body, shape (n,)."""
 
-    def __init__(self, names: Iterable[str] | str) -> None:
+    def __init__(self, names: Iterable[str] | str, ephemeris: str | os.PathLike[str] | None = None) -> None:
         wanted = [names] if isinstance(names, str) else list(names)
         known = _engine.body_words()
         for word in wanted:
@@ -164,8 +174,17 @@ class Bodies:
                 raise WrongType.of("Bodies: name", word, ", ".join(known))
             if word not in known:
                 raise UnknownName.among("Bodies: name", word, known)
-        object.__setattr__(self, "_handle", _engine.Bodies(wanted))
+        if ephemeris is not None and not isinstance(ephemeris, (str, os.PathLike)):
+            raise WrongType.of("Bodies: ephemeris", ephemeris, "None, or the path of an SPK file")
+        path = None if ephemeris is None else os.fspath(ephemeris)
+        object.__setattr__(self, "_handle", _engine.Bodies(wanted, path))
+        object.__setattr__(self, "_path", path)
         object.__setattr__(self, "name", read_only(np.array(wanted, dtype=np.str_)))
+
+    @property
+    def ephemeris(self) -> str:
+        """What the positions come from, in words."""
+        return self._handle.ephemeris
 
     def __len__(self) -> int:
         return len(self.name)
@@ -174,19 +193,19 @@ class Bodies:
         raise AttributeError(f"Bodies: {attribute} cannot be set; Bodies do not change")
 
     def __reduce__(self) -> tuple[Any, ...]:
-        return Bodies, (list(map(str, self.name)),)
+        return Bodies, (list(map(str, self.name)), self._path)
 
     def __repr__(self) -> str:
         return f"<Bodies {', '.join(self.name)}>"
 
 
-def as_targets(targets: Any) -> Catalog | Bodies:
-    """`targets` as every verb takes them: a Catalog, Bodies, or an astropy SkyCoord (made into a Catalog)."""
-    if isinstance(targets, (Catalog, Bodies)):
+def as_targets(targets: Any) -> Catalog | Bodies | Orbits:
+    """`targets` as every verb takes them: a Catalog, Bodies, Orbits, or a SkyCoord (made into a Catalog)."""
+    if isinstance(targets, (Catalog, Bodies, Orbits)):
         return targets
     if interop.is_sky_coord(targets):
         return Catalog.from_skycoord(targets)
-    allowed = "a Catalog, Bodies or an astropy SkyCoord"
+    allowed = "a Catalog, Bodies, Orbits or an astropy SkyCoord"
     if isinstance(targets, str):
         allowed += f"; a body by its name is Bodies([{targets!r}])"
     raise WrongType.of("targets", targets, allowed)

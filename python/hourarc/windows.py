@@ -13,6 +13,7 @@ from . import _engine
 from ._columns import Floats, column, workers
 from .errors import InvalidArgument, WrongType
 from .limits import Limits
+from .orbits import Orbits
 from .orientation import Orientation, as_orientation
 from .results import STATUS_WORDS, Coded, ColumnResult, Ragged, arrow_table, words
 from .site import Site, as_site
@@ -192,7 +193,7 @@ class Windows(Ragged, ColumnResult):
 
 def windows(
     site: Site,
-    targets: Catalog | Bodies,
+    targets: Catalog | Bodies | Orbits,
     start: Any,
     stop: Any,
     limits: Limits | None = None,

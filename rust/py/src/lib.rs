@@ -10,7 +10,9 @@ mod errors;
 mod events;
 mod explain;
 mod geometry;
+mod kernel;
 mod limits;
+mod orbits;
 mod orientation;
 mod place;
 mod season;
@@ -37,6 +39,8 @@ mod _engine {
     use crate::explain::explain;
     #[pymodule_export]
     use crate::geometry::{position_angle, separation};
+    #[pymodule_export]
+    use crate::orbits::Orbits;
     #[pymodule_export]
     use crate::orientation::Orientation;
     #[pymodule_export]

@@ -1,12 +1,15 @@
-//! Targets: a catalogue, or bodies of the solar system.
+//! Targets: a catalogue, bodies of the solar system, or orbits.
 
 use hourarc_core::astrometry::{self, CatalogColumns};
 use hourarc_core::ephemeris::{Body, Ephemeris};
 use numpy::PyArray1;
 use pyo3::prelude::*;
+use std::path::PathBuf;
 
 use crate::arrays::{Floats, codes, column, equal};
 use crate::errors::raise;
+use crate::kernel::kernel_with;
+use crate::orbits::Orbits;
 
 /// Rows of catalogue places.
 #[pyclass(frozen, module = "hourarc._engine")]
@@ -73,10 +76,21 @@ pub struct Bodies {
 #[pymethods]
 impl Bodies {
     #[new]
-    fn new(words: Vec<String>) -> PyResult<Self> {
-        let bodies =
+    #[pyo3(signature = (words, kernel))]
+    fn new(words: Vec<String>, kernel: Option<PathBuf>) -> PyResult<Self> {
+        let bodies: Vec<Body> =
             words.iter().map(|word| Body::from_word(word)).collect::<Result<_, _>>().map_err(raise)?;
-        Ok(Bodies { bodies, ephemeris: Ephemeris::default() })
+        let ephemeris = match kernel {
+            Some(path) => Ephemeris::Kernel(kernel_with(&path, &bodies)?),
+            None => Ephemeris::default(),
+        };
+        Ok(Bodies { bodies, ephemeris })
+    }
+
+    /// What the positions come from, in words.
+    #[getter]
+    fn ephemeris(&self) -> String {
+        self.ephemeris.provenance()
     }
 
     fn __len__(&self) -> usize {
@@ -91,6 +105,8 @@ pub enum Targets<'py> {
     Catalog(Bound<'py, Catalog>),
     /// Bodies of the solar system.
     Bodies(Bound<'py, Bodies>),
+    /// Minor bodies on their orbits.
+    Orbits(Bound<'py, Orbits>),
 }
 
 impl Targets<'_> {
@@ -99,13 +115,14 @@ impl Targets<'_> {
         match self {
             Targets::Catalog(catalog) => astrometry::Targets::Catalog(&catalog.get().rows),
             Targets::Bodies(bodies) => astrometry::Targets::Bodies(&bodies.get().bodies),
+            Targets::Orbits(orbits) => astrometry::Targets::Orbits(&orbits.get().rows),
         }
     }
 
     /// The ephemeris they ask for.
     pub fn ephemeris(&self) -> Ephemeris {
         match self {
-            Targets::Catalog(_) => Ephemeris::default(),
+            Targets::Catalog(_) | Targets::Orbits(_) => Ephemeris::default(),
             Targets::Bodies(bodies) => bodies.get().ephemeris.clone(),
         }
     }

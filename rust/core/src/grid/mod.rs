@@ -4,12 +4,14 @@
 //! worked through by one thread in the order of its rows: the results are the same bits whoever did
 //! which block. The caller owns the outputs and is asked, some twenty times a second, whether to go on.
 
+mod advance;
 mod parallel;
 mod place;
 mod season;
 mod tables;
 mod watch;
 
+pub use advance::advance;
 pub use parallel::{KEEP_GOING, Workers};
 pub use place::{PLACE_AIRMASS, PlaceColumn, PlaceColumns, Shape, place};
 pub use season::{GridColumns, GridQuantity, GridReport, GridValues, visibility_grid};

@@ -80,15 +80,31 @@ impl Lines {
 /// Reads minor-planet lines. Everything up to a line of dashes is a heading, if there is such a line; blank lines are
 /// passed over.
 pub fn minor_planets(text: &str) -> Lines {
-    let is_rule = |line: &str| line.len() >= 20 && line.trim_end().bytes().all(|c| c == b'-');
-    let heading = text.lines().position(is_rule).map_or(0, |rule| rule + 1);
-    read(text, heading, minor_planet)
+    read(text, heading(text), minor_planet)
 }
 
 /// Reads comet lines; blank lines are passed over. Without an epoch the perihelion is the epoch, as the Center has it for
 /// unperturbed orbits.
 pub fn comets(text: &str) -> Lines {
     read(text, 0, comet)
+}
+
+/// Reads lines of minor planets and of comets, each by what it looks like; a heading ends with a line of dashes.
+///
+/// A line is taken for a comet's when column 5 is one of the kinds `ACDIPX` and columns 15 to 18 are a year.
+pub fn orbit_lines(text: &str) -> Lines {
+    read(text, heading(text), |number, line| {
+        let bytes = line.as_bytes();
+        let kind = bytes.get(4).is_some_and(|kind| b"ACDIPX".contains(kind));
+        let year = bytes.get(14..18).is_some_and(|year| year.iter().all(u8::is_ascii_digit));
+        if kind && year { comet(number, line) } else { minor_planet(number, line) }
+    })
+}
+
+/// Lines of a heading: those up to a line of dashes, if there is one.
+fn heading(text: &str) -> usize {
+    let is_rule = |line: &str| line.len() >= 20 && line.trim_end().bytes().all(|c| c == b'-');
+    text.lines().position(is_rule).map_or(0, |rule| rule + 1)
 }
 
 /// Columns at fault and reason.
@@ -358,6 +374,21 @@ mod tests {
             assert_eq!((rejected.line, rejected.columns), (1, columns), "{rejected}");
             assert!(rejected.reason.contains(reason), "{rejected}");
         }
+    }
+
+    /// A file of both kinds, with a heading: each line by what it looks like, none lost.
+    #[test]
+    fn mixed_lines_are_told_apart() {
+        let short = &CERES[..80];
+        let text = format!("heading\n{}\n{CERES}\n{COMET}\n{short}\n{PERIODIC}\n", "-".repeat(160));
+        let lines = orbit_lines(&text);
+        assert_eq!(lines.rows.iter().map(|row| row.line).collect::<Vec<_>>(), [3, 4, 6]);
+        assert_eq!(
+            lines.rows[..2],
+            [&minor_planets(CERES).rows[0], &comets(COMET).rows[0]]
+                .map(|row| Row { line: if row.designation.contains("1995") { 4 } else { 3 }, ..row.clone() })
+        );
+        assert_eq!((lines.rejected.len(), lines.rejected[0].line), (1, 5));
     }
 
     /// Any line cut anywhere, and any column overwritten by any of some bad characters, is a row or a rejection.

@@ -42,7 +42,8 @@ impl PlaceColumn {
             | PlaceColumn::AzimuthRateArcsecS
             | PlaceColumn::ParallacticAngleRateArcsecS
             | PlaceColumn::MoonSeparationDeg
-            | PlaceColumn::SunSeparationDeg => None,
+            | PlaceColumn::SunSeparationDeg
+            | PlaceColumn::SkyBrightnessMagArcsec2 => None,
         }
     }
 }
