@@ -181,6 +181,20 @@ class Bodies:
         object.__setattr__(self, "_path", path)
         object.__setattr__(self, "name", read_only(np.array(wanted, dtype=np.str_)))
 
+    def states(self, mjd_tdb: ArrayLike, fraction: ArrayLike = 0.0) -> tuple[Floats, Floats]:
+        """Barycentric positions (au) and velocities (au a day), ICRS, each of shape (times, bodies, 3).
+
+        * ``mjd_tdb``, ``fraction``: instants as MJD of TDB and what is to be added to it, days.
+
+        Geometric: no light time, no aberration. NaN outside the ephemeris. From a kernel within 1e-13 of the
+        values jplephem computes (`tests/test_accuracy_kernel.py`).
+        """
+        given = {"mjd_tdb": (mjd_tdb, "d"), "fraction": (fraction, "d")}
+        columns = columns_of_one_length(given, "Bodies.states")
+        day, rest = (np.ascontiguousarray(column) for column in columns.values())
+        numbers = self._handle.states(day, rest).reshape(len(day), len(self), 2, 3)
+        return numbers[:, :, 0], numbers[:, :, 1]
+
     @property
     def ephemeris(self) -> str:
         """What the positions come from, in words."""

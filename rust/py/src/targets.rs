@@ -87,6 +87,30 @@ impl Bodies {
         Ok(Bodies { bodies, ephemeris })
     }
 
+    /// Barycentric states at instants of TDB, six numbers a body, the bodies of an instant together, au and au a day;
+    /// NaN outside the ephemeris.
+    fn states<'py>(
+        &self,
+        py: Python<'py>,
+        mjd_tdb: Floats<'py>,
+        fraction: Floats<'py>,
+    ) -> PyResult<Bound<'py, PyArray1<f64>>> {
+        let [days, fractions] = equal([("mjd_tdb", &mjd_tdb), ("fraction", &fraction)])?;
+        let numbers = py.detach(|| {
+            let mut numbers = Vec::with_capacity(6 * self.bodies.len() * days.len());
+            for (&day, &fraction) in days.iter().zip(fractions) {
+                for &body in &self.bodies {
+                    match self.ephemeris.state_at(body, day, fraction) {
+                        Ok(state) => numbers.extend([state.position, state.velocity].concat()),
+                        Err(_) => numbers.extend([f64::NAN; 6]),
+                    }
+                }
+            }
+            numbers
+        });
+        Ok(column(py, numbers))
+    }
+
     /// What the positions come from, in words.
     #[getter]
     fn ephemeris(&self) -> String {
