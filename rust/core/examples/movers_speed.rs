@@ -15,7 +15,7 @@ use hourarc_core::grid::{
 use hourarc_core::refraction::{AirmassModel, Atmosphere, Refraction};
 use hourarc_core::site::Site;
 use hourarc_core::time::{LeapSeconds, Utc};
-use hourarc_core::windows::{Column, Limits};
+use hourarc_core::windows::{Column, Limits, SkyModel};
 use std::time::Instant;
 
 fn orbits(rows: usize) -> Orbits {
@@ -84,7 +84,7 @@ fn main() {
         ] {
             let seconds = best(|| {
                 let columns = vec![(wanted[0], &mut a[..]), (wanted[1], &mut b[..])];
-                let out = PlaceColumns { columns, status: &mut status };
+                let out = PlaceColumns { columns, status: &mut status, sky_model: SkyModel::default() };
                 let mut workers = Workers::new(threads, &mut go);
                 place(&observer, &targets, when, shape, out, &mut workers).expect("places");
             });
@@ -101,7 +101,7 @@ fn main() {
         });
         report("rise, transit, set of a night", seconds, rows);
         let seconds = best(|| {
-            let table = window_table(&mut days, &targets, &limits, &mut Workers::new(threads, &mut go));
+            let table = window_table(&mut days, &targets, &limits, None, &mut Workers::new(threads, &mut go));
             assert!(table.expect("windows").start.len() > rows / 8);
         });
         report("windows of a night", seconds, rows);

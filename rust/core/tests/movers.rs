@@ -18,7 +18,7 @@ use hourarc_core::math::vector::{Vector, add, angle, cross, norm, rotate, scale,
 use hourarc_core::refraction::{AirmassModel, Refraction};
 use hourarc_core::site::Site;
 use hourarc_core::time::{Instant, LeapSeconds, Tai, Tdb, Utc};
-use hourarc_core::windows::{Column, Limits};
+use hourarc_core::windows::{Column, Limits, SkyModel};
 
 static ASTEROIDS: &[u8] = include_bytes!("../../../tests/data/asteroid-excerpt.bsp");
 const DAY_NS: i64 = 86_400_000_000_000;
@@ -128,6 +128,7 @@ fn columns(
     let mut status = vec![0; rows];
     let mut go = KEEP_GOING;
     let out = PlaceColumns {
+        sky_model: SkyModel::default(),
         columns: wanted.iter().copied().zip(values.iter_mut().map(|values| &mut values[..])).collect(),
         status: &mut status,
     };
@@ -419,7 +420,7 @@ fn windows_and_grid_of_orbits_agree() {
         let (start, stop) = night_bounds(first + night as i64, setting.site.longitude());
         let track = track_for(&setting.observer(), start, stop).unwrap();
         let mut days = Days::new(setting.observer(), &track, start, stop).unwrap();
-        let table = window_table(&mut days, &targets, &limits, &mut Workers::new(2, &mut go)).unwrap();
+        let table = window_table(&mut days, &targets, &limits, None, &mut Workers::new(2, &mut go)).unwrap();
         for row in 0..orbits.len() {
             let windows = table.offsets[row] as usize..table.offsets[row + 1] as usize;
             let sum: i64 = windows.map(|i| table.stop[i] - table.start[i]).sum();
@@ -444,6 +445,6 @@ fn windows_and_grid_of_orbits_agree() {
     assert_eq!(events.status[0], Status::FarFromEpoch as u8);
     // The drift is in the stated error: 5″ is a third of a second.
     assert!(events.computed_error_s[0] > 0.2);
-    let windows = window_table(&mut days, &targets, &limits, &mut Workers::new(2, &mut go)).unwrap();
+    let windows = window_table(&mut days, &targets, &limits, None, &mut Workers::new(2, &mut go)).unwrap();
     assert_eq!(windows.status[0], Status::FarFromEpoch as u8);
 }

@@ -5,15 +5,17 @@
 //! which block. The caller owns the outputs and is asked, some twenty times a second, whether to go on.
 
 mod advance;
+mod event_table;
 mod parallel;
 mod place;
 mod season;
-mod tables;
+mod window_table;
 mod watch;
 
 pub use advance::advance;
+pub use event_table::{EventTable, event_table};
 pub use parallel::{KEEP_GOING, Workers};
 pub use place::{PLACE_AIRMASS, PlaceColumn, PlaceColumns, Shape, place};
 pub use season::{GridColumns, GridQuantity, GridReport, GridValues, visibility_grid};
-pub use tables::{EventTable, WindowTable, event_table, window_table};
 pub use watch::{Watch, WatchColumns, WatchedWindows};
+pub use window_table::{WindowTable, window_table};
