@@ -8,7 +8,6 @@ use crate::constants::TURN;
 use crate::horizon::altitude;
 use crate::math::vector::{Vector, add, add_scaled, rotate, unit};
 use crate::refraction::AirmassModel;
-use crate::time::{Instant, Tai};
 use crate::windows::intervals::{Interval, IntervalSet};
 
 /// The circle that a star describes on a night.
@@ -136,9 +135,9 @@ pub(super) fn summary(
     model: AirmassModel,
     wanted: &Wanted,
 ) -> NightSummary {
-    let mut summary = NightSummary::of_windows(windows, |seconds| mjd(observer, night.middle, seconds));
+    let mut summary = NightSummary::of_windows(windows, |seconds| night.mjd(observer, seconds));
     if wanted.transit {
-        summary.transit = mjd(observer, night.middle, circle.transit());
+        summary.transit = night.mjd(observer, circle.transit());
     }
     if wanted.best_airmass && !windows.is_empty() {
         let highest = windows.iter().map(|window| circle.highest(window)).fold(-1.0, f64::max);
@@ -159,15 +158,6 @@ pub(super) fn summary(
         }
     }
     summary
-}
-
-/// UTC as a Modified Julian Date, at seconds from an instant.
-pub(super) fn mjd(observer: &Observer<'_>, middle: Instant<Tai>, seconds: f64) -> f64 {
-    let utc = observer.orientation.leap_seconds().to_utc(middle.plus_seconds(seconds));
-    utc.map_or(f64::NAN, |(utc, _)| {
-        let (day, fraction) = utc.mjd_parts();
-        day + fraction
-    })
 }
 
 fn airmass(observer: &Observer<'_>, model: AirmassModel, sin_altitude: f64) -> f64 {

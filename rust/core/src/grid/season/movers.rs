@@ -1,7 +1,6 @@
 //! A target that moves on one night: what its windows do not say.
 
 use super::columns::{NightSummary, Wanted};
-use super::detail::mjd;
 use super::night::Night;
 use crate::astrometry::Moving;
 use crate::constants::SECONDS_PER_DAY;
@@ -26,7 +25,7 @@ pub(super) fn summary(
     wanted: &Wanted,
 ) -> Option<NightSummary> {
     let observer = days.observer();
-    let mut summary = NightSummary::of_windows(windows, |seconds| mjd(observer, night.middle, seconds));
+    let mut summary = NightSummary::of_windows(windows, |seconds| night.mjd(observer, seconds));
     let arcs: Vec<(usize, &Arc<'_>)> = days
         .arcs
         .iter()
@@ -45,7 +44,7 @@ pub(super) fn summary(
                 }
             }
         }
-        summary.transit = if nearest.is_finite() { mjd(observer, night.middle, nearest) } else { f64::NAN };
+        summary.transit = if nearest.is_finite() { night.mjd(observer, nearest) } else { f64::NAN };
     }
     if wanted.best_airmass && !windows.is_empty() {
         let night_span = night.start.nanoseconds()..night.stop.nanoseconds();
