@@ -97,8 +97,16 @@ impl Refraction {
         topocentric_altitude + self.bending.value(topocentric_altitude - self.lowest_topocentric)
     }
 
-    /// The same with its derivative with respect to the topocentric altitude. That is positive, below 1 but
-    /// for air laden with vapour, and exactly 1 under the lowest altitude.
+    /// Topocentric altitudes made observed ones, in place: the same bits, in loops to be compiled by
+    /// [`dispatch`](crate::math::dispatch).
+    #[inline(always)]
+    pub fn observe(&self, altitudes: &mut [f64]) {
+        self.bending.add_values(self.lowest_topocentric, altitudes);
+    }
+
+    /// The same as [`observed_altitude`](Refraction::observed_altitude), with its derivative with respect to the
+    /// topocentric altitude. That is positive, below 1 but for air laden with vapour, and exactly 1 under the
+    /// lowest altitude.
     #[inline]
     pub fn observed_altitude_and_slope(&self, topocentric_altitude: f64) -> (f64, f64) {
         let (bending, slope) = self.bending.value_and_slope(topocentric_altitude - self.lowest_topocentric);

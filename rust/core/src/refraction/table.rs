@@ -45,6 +45,21 @@ pub(super) fn knot(i: usize) -> f64 {
     FIRST * ((1_u64 << (i / CELLS_PER_OCTAVE)) as f64 * (1.0 + within) - 1.0)
 }
 
+/// The number of the cell (beyond the last for a NaN), the fraction of the cell, and the variable's bits.
+#[inline(always)]
+fn locate(argument: f64) -> (usize, f64, u64) {
+    let x = (argument + FIRST).clamp(FIRST, LAST);
+    let bits = x.to_bits();
+    let cell = (bits >> REST_BITS).wrapping_sub(FIRST_CELL) as usize;
+    let fraction = f64::from_bits(ONE_BITS | (bits & REST_MASK) << CELL_BITS) - 1.0;
+    (cell, fraction, bits)
+}
+
+#[inline(always)]
+fn cubic(c: &[f64; 4], t: f64) -> f64 {
+    ((c[3] * t + c[2]) * t + c[1]) * t + c[0]
+}
+
 impl OctaveCubic {
     /// Zero everywhere.
     pub fn zero() -> Self {
@@ -83,19 +98,34 @@ impl OctaveCubic {
     /// The cell's coefficients, the fraction of the cell, and the variable's bits.
     #[inline(always)]
     fn locate(&self, argument: f64) -> (&[f64; 4], f64, u64) {
-        let x = (argument + FIRST).clamp(FIRST, LAST);
-        let bits = x.to_bits();
+        let (cell, fraction, bits) = locate(argument);
         // A NaN lands in the last cell: the callers add the argument itself.
-        let cell = ((bits >> REST_BITS).wrapping_sub(FIRST_CELL) as usize).min(CELLS - 1);
-        let fraction = f64::from_bits(ONE_BITS | (bits & REST_MASK) << CELL_BITS) - 1.0;
-        (&self.cells[cell], fraction, bits)
+        (&self.cells[cell.min(CELLS - 1)], fraction, bits)
     }
 
     /// The function.
     #[inline(always)]
     pub fn value(&self, argument: f64) -> f64 {
         let (c, t, _) = self.locate(argument);
-        ((c[3] * t + c[2]) * t + c[1]) * t + c[0]
+        cubic(c, t)
+    }
+
+    /// Adds to each variable the function of what it exceeds `zero` by: the same bits as [`OctaveCubic::value`].
+    ///
+    /// In two loops: the cells are found on whole registers, their coefficients fetched one by one.
+    #[inline(always)]
+    pub fn add_values(&self, zero: f64, variables: &mut [f64]) {
+        const AT_ONCE: usize = 64;
+        let (mut cells, mut fractions) = ([0_u32; AT_ONCE], [0.0; AT_ONCE]);
+        for part in variables.chunks_mut(AT_ONCE) {
+            for ((&variable, cell), fraction) in part.iter().zip(&mut cells).zip(&mut fractions) {
+                let (number, within, _) = locate(variable - zero);
+                (*cell, *fraction) = (number as u32, within);
+            }
+            for ((variable, &cell), &fraction) in part.iter_mut().zip(&cells).zip(&fractions) {
+                *variable += cubic(&self.cells[(cell as usize).min(CELLS - 1)], fraction);
+            }
+        }
     }
 
     /// The function and its derivative, which is 0 below an argument of 0.
@@ -150,6 +180,19 @@ mod tests {
         let spline = OctaveCubic::zero();
         for x in [f64::NAN, f64::INFINITY, f64::NEG_INFINITY, 1e300, -1e300] {
             assert_eq!(spline.value(x), 0.0);
+        }
+    }
+
+    #[test]
+    fn many_at_once_are_the_same_bits() {
+        let values = std::array::from_fn(|i| (3.0 * knot(i)).sin());
+        let spline = OctaveCubic::spline(&values, Slopes { first: 3.0, last: -1.0 });
+        let edges = [f64::NAN, -f64::NAN, f64::INFINITY, f64::NEG_INFINITY, 0.25, -0.0, 1.9375, 1e300];
+        let mut many: Vec<f64> = (0..1000).map(|i| 0.0025 * f64::from(i) - 0.2).chain(edges).collect();
+        let expected: Vec<f64> = many.iter().map(|x| x + spline.value(x - 0.25)).collect();
+        spline.add_values(0.25, &mut many);
+        for (found, expected) in many.iter().zip(&expected) {
+            assert!(found.to_bits() == expected.to_bits() || (found.is_nan() && expected.is_nan()));
         }
     }
 }

@@ -164,10 +164,8 @@ impl Kernel for Altitudes<'_> {
             let across = A::multiply_add(north[row], north[row], east[row] * east[row]).sqrt();
             topocentric[row] = atan2::<A>(zenith[row], across);
         }
-        // Apart from the loop above: a table look-up keeps LLVM from whole registers of the arctangent.
-        for row in 0..rows {
-            observed[row] = self.refraction.observed_altitude(topocentric[row]);
-        }
+        observed.copy_from_slice(topocentric);
+        self.refraction.observe(observed);
     }
 }
 

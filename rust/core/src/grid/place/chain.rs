@@ -21,6 +21,23 @@ pub(in crate::grid) struct Chain<'a> {
 }
 
 impl Chain<'_> {
+    /// What is to be said of the targets from `target` on before any direction is known.
+    pub fn status(&self, sky: &Sky, target: usize, out: &mut [u8]) {
+        let note = sky.note();
+        match self.targets {
+            Targets::Catalog(catalog) => {
+                for (status, own) in out.iter_mut().zip(&catalog.status()[target..]) {
+                    *status = own.worst(note) as u8;
+                }
+            }
+            _ => {
+                for (status, target) in out.iter_mut().zip(target..) {
+                    *status = self.targets.status(target).worst(note) as u8;
+                }
+            }
+        }
+    }
+
     /// Directions of the targets from `target` on, under one sky, into the rows of a block.
     pub fn directions(
         &self,
@@ -30,10 +47,7 @@ impl Chain<'_> {
         buffers: &mut Buffers,
         out: &mut PlaceColumns<'_>,
     ) {
-        let note = sky.note();
-        for (status, target) in out.status[rows.clone()].iter_mut().zip(target..) {
-            *status = self.targets.status(target).worst(note) as u8;
-        }
+        self.status(sky, target, &mut out.status[rows.clone()]);
         match self.targets {
             Targets::Catalog(catalog) if rows.len() > 1 => {
                 let stars = catalog.columns(target..target + rows.len());

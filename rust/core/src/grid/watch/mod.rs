@@ -107,8 +107,13 @@ impl Watch {
         buffers: &mut Buffers,
     ) {
         let rows = out.up.len();
-        chain.directions(sky, first, 0..rows, buffers, &mut out.places);
-        buffers.write(&mut out.places, chain.observer, chain.isa);
+        if out.places.columns.is_empty() && matches!(chain.targets, Targets::Catalog(_)) {
+            // Nothing is asked of the directions; those of bodies have a status of their own.
+            chain.status(sky, first, out.places.status);
+        } else {
+            chain.directions(sky, first, 0..rows, buffers, &mut out.places);
+            buffers.write(&mut out.places, chain.observer, chain.isa);
+        }
         chain.isa.run(Lookup {
             table: &self.table,
             rows: first..first + rows,
