@@ -50,7 +50,7 @@ def test_the_stubs_functions_have_the_binarys_parameters():
 
 def test_the_stubs_classes_have_the_binarys_members():
     classes = [node for node in STUB.body if isinstance(node, ast.ClassDef)]
-    assert len(classes) == 4
+    assert len(classes) == 6
     for node in classes:
         kind = getattr(_engine, node.name)
         methods = {item.name: item for item in node.body if isinstance(item, ast.FunctionDef)}

@@ -29,6 +29,7 @@ from .season import GRID_QUANTITIES, Grid, visibility_grid
 from .season_summary import SeasonSummary
 from .site import Site
 from .targets import Bodies, Catalog
+from .watch import WATCH_COLUMNS, Moment, Watch
 from .windows import REASON_WORDS, Window, Windows, windows
 
 __version__: str = _engine.version
@@ -39,6 +40,7 @@ __all__ = [
     "PLACE_COLUMNS",
     "REASON_WORDS",
     "STATUS_WORDS",
+    "WATCH_COLUMNS",
     "Almanac",
     "Bodies",
     "Catalog",
@@ -48,12 +50,14 @@ __all__ = [
     "HourarcError",
     "HourarcWarning",
     "Limits",
+    "Moment",
     "Orbits",
     "Orientation",
     "Places",
     "RejectedLine",
     "SeasonSummary",
     "Site",
+    "Watch",
     "Window",
     "Windows",
     "__version__",

@@ -21,6 +21,7 @@ __all__ = [
     "Orbits",
     "Orientation",
     "Site",
+    "Watch",
     "airmass_model_words",
     "almanac",
     "bias_precession_nutation",
@@ -144,6 +145,35 @@ class Orientation:
     ) -> Orientation: ...
     def at(self, utc_ns: _Nanoseconds) -> dict[str, NDArray[Any]]: ...
     def provenance(self) -> dict[str, int | None]: ...
+
+@final
+class Watch:
+    def __new__(
+        cls,
+        site: Site,
+        targets: Catalog | Bodies | Orbits,
+        orientation: Orientation,
+        start_ns: int,
+        stop_ns: int,
+        offsets: _Nanoseconds,
+        start: _Nanoseconds,
+        stop: _Nanoseconds,
+        stop_reason: _Bytes,
+        status: _Bytes,
+        workers: tuple[int, str],
+    ) -> Watch: ...
+    def at(
+        self,
+        site: Site,
+        targets: Catalog | Bodies | Orbits,
+        orientation: Orientation,
+        utc_ns: int,
+        up: NDArray[np.bool_],
+        stop_reason: _Bytes,
+        status: _Bytes,
+        columns: dict[str, _Floats],
+        workers: tuple[int, str],
+    ) -> None: ...
 
 def place(
     site: Site,

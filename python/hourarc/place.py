@@ -49,6 +49,8 @@ PLACE_COLUMNS = (
     "sun_separation_deg",
     "sky_brightness_mag_arcsec2",
     *LOOKS_COLUMNS,
+    "azimuth_rate_arcsec_s",
+    "parallactic_angle_rate_arcsec_s",
 )
 """Every column that `place` can compute; the first six are computed when nothing is said."""
 
@@ -102,6 +104,10 @@ class Places(ColumnResult):
     """Position angle of the bright limb's middle, degrees from the north of date through east."""
     moon_age_d: Floats
     """Days since the last new Moon; NaN for all but the Moon."""
+    azimuth_rate_arcsec_s: Floats
+    """Rate of the azimuth of a direction fixed among the stars, arcseconds a second, without the air."""
+    parallactic_angle_rate_arcsec_s: Floats
+    """The same of the parallactic angle: the rotation of an altazimuth telescope's field."""
     time: NDArray[np.datetime64]
     """The instants, UTC, datetime64[ns], in the shape they were given."""
     status: NDArray[np.uint8]

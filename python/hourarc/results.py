@@ -49,6 +49,12 @@ COLUMNS: Mapping[str, Column] = {
     ),
     "moon_separation_deg": Column("deg", "pos.angDistance", "angle to the centre of the Moon"),
     "sun_separation_deg": Column("deg", "pos.angDistance", "angle to the centre of the Sun"),
+    "azimuth_rate_arcsec_s": Column(
+        "arcsec / s", "arith.rate;pos.az.azi", "rate of the azimuth of a direction fixed among the stars"
+    ),
+    "parallactic_angle_rate_arcsec_s": Column(
+        "arcsec / s", "arith.rate;pos.posAng", "rate of the parallactic angle of such a direction"
+    ),
     "sky_brightness_mag_arcsec2": Column(
         "mag / arcsec2", "phot.mag.sb;em.opt.V", "brightness of the sky with the Moon in it, V"
     ),
@@ -93,6 +99,10 @@ COLUMNS: Mapping[str, Column] = {
     "blocked_by": Column("", "meta.code", "limit that leaves nothing"),
     "window_count": Column("", "meta.number", "number of windows"),
     "hours": Column("h", "time.duration", "sum of the windows"),
+    # watch
+    "up": Column("", "meta.code", "whether all limits hold"),
+    "seconds_left": Column("s", "time.duration", "until the window that is open closes"),
+    "seconds_to_next": Column("s", "time.duration", "until the next window opens"),
     # season
     "transit": Column("", "time.epoch", "upper culmination nearest to the middle of the night, UTC"),
     "moon_separation_min": Column(

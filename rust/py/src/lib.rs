@@ -19,6 +19,7 @@ mod season;
 mod site;
 mod slots;
 mod targets;
+mod watch;
 mod windows;
 mod words;
 mod workers;
@@ -53,6 +54,8 @@ mod _engine {
     use crate::slots::{slots, windows_after_gap};
     #[pymodule_export]
     use crate::targets::{Bodies, Catalog};
+    #[pymodule_export]
+    use crate::watch::Watch;
     #[pymodule_export]
     use crate::windows::windows;
     #[pymodule_export]
