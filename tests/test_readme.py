@@ -3,12 +3,15 @@
 The two commands that install are run by `.ci/run`, from the same blocks.
 """
 
+import itertools
 import re
 import shlex
 import subprocess
 import sys
 from pathlib import Path
 
+import hourarc as ha
+import numpy as np
 import pytest
 import readme
 
@@ -29,10 +32,31 @@ def commands():
 
 
 def test_the_example_prints_what_the_readme_says():
-    (example,), (printed,) = readme.blocks("python"), readme.blocks("text")
+    (example, _), (printed, _) = readme.blocks("python"), readme.blocks("text")
     done = subprocess.run([sys.executable, "-c", example], capture_output=True, text=True, timeout=120)
     assert (done.returncode, done.stderr) == (0, "")
     assert done.stdout == printed
+
+
+def test_the_queue_runs_through_a_night(tmp_path, monkeypatch, capsys):
+    (_, queue), (_, printed) = readme.blocks("python"), readme.blocks("text")
+    assert queue.count("\n") < 40
+    assert hourarc(".venv/bin/hourarc demo", tmp_path).returncode == 0
+    monkeypatch.chdir(tmp_path)
+    told = {}
+    exec(compile(queue, "README.md", "exec"), told)
+    assert capsys.readouterr().out == printed
+    # Nobody twice, one at a time, and each within a window as `windows` has it.
+    visits, watch = told["visits"], told["watch"]
+    length = np.timedelta64(int(told["visit_s"]), "s")
+    found = ha.windows(watch.site, watch.targets, watch.start, watch.stop, watch.limits)
+    picks = [pick for _, pick, _, _ in visits]
+    assert len(set(picks)) == len(picks) > 100
+    assert all(earlier[0] + length <= later[0] for earlier, later in itertools.pairwise(visits))
+    for when, pick, left, reason in visits:
+        (window,) = [w for w in found.of(int(pick)) if w.start <= when < w.stop]
+        assert when + length <= window.stop
+        assert (left, reason) == ((window.stop - when) / np.timedelta64(1, "s"), window.stop_reason)
 
 
 def test_the_commands_run_one_after_another(tmp_path):
