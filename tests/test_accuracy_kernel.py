@@ -1,4 +1,4 @@
-"""Kernels: the same numbers as jplephem's, the same sky as astropy's, and clear words for what is no kernel."""
+"""Kernels: jplephem's numbers, astropy's sky, and clear words for what is no kernel."""
 
 import struct
 from pathlib import Path

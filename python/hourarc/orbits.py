@@ -62,7 +62,7 @@ class Orbits:
     are untouched.
     """
 
-    __slots__ = ("_columns", "_handle", "name", "rejected", "status")
+    __slots__ = ("_columns", "_handle", "line", "name", "rejected", "status")
 
     _handle: _engine.Orbits
     _columns: dict[str, Floats] | None
@@ -70,6 +70,8 @@ class Orbits:
     """The name of each row, shape (n,), or None."""
     status: NDArray[np.uint8]
     """The status of each row, shape (n,): 0 is good, from 16 on the row has no results."""
+    line: NDArray[np.int64] | None
+    """The line of the text that each row was read from by `from_mpc`, from 1, shape (n,); None otherwise."""
     rejected: tuple[RejectedLine, ...]
     """The lines that were no orbits; empty unless read by `from_mpc`."""
 
@@ -130,7 +132,11 @@ class Orbits:
         self._take(made, name)
 
     def _take(
-        self, handle: _engine.Orbits, name: Iterable[str] | None, rejected: Iterable[RejectedLine] = ()
+        self,
+        handle: _engine.Orbits,
+        name: Iterable[str] | None,
+        rejected: Iterable[RejectedLine] = (),
+        line: NDArray[np.int64] | None = None,
     ) -> None:
         names = None
         if name is not None:
@@ -144,13 +150,18 @@ class Orbits:
         object.__setattr__(self, "status", read_only(handle.status))
         object.__setattr__(self, "name", names)
         object.__setattr__(self, "rejected", tuple(rejected))
+        object.__setattr__(self, "line", None if line is None else read_only(line))
 
     @classmethod
     def _of(
-        cls, handle: _engine.Orbits, name: Iterable[str] | None, rejected: Iterable[RejectedLine] = ()
+        cls,
+        handle: _engine.Orbits,
+        name: Iterable[str] | None,
+        rejected: Iterable[RejectedLine] = (),
+        line: NDArray[np.int64] | None = None,
     ) -> Orbits:
         made = cls.__new__(cls)
-        made._take(handle, name, rejected)
+        made._take(handle, name, rejected, line)
         return made
 
     @classmethod
@@ -170,8 +181,8 @@ class Orbits:
             text = Path(source).read_text(encoding="utf-8", errors="replace")
         else:
             raise WrongType.of("Orbits.from_mpc", source, "a path, or the text of the lines")
-        handle, names, rejected = _engine.Orbits.from_mpc(text)
-        return cls._of(handle, names, (RejectedLine(*line) for line in rejected))
+        handle, names, lines, rejected = _engine.Orbits.from_mpc(text)
+        return cls._of(handle, names, (RejectedLine(*line) for line in rejected), lines)
 
     def advance(self, to_mjd_tt: float, *, threads: int | None = None) -> Orbits:
         """The same bodies with the elements of another epoch, MJD TT.
@@ -182,7 +193,7 @@ class Orbits:
         orbit there (it falls into the Sun, or leaves the ephemeris) has a status of 16 or more.
         """
         to = scalar(to_mjd_tt, "Orbits.advance: to_mjd_tt", "d")
-        return self._of(self._handle.advance(to, workers(threads)), self.name)
+        return self._of(self._handle.advance(to, workers(threads)), self.name, (), self.line)
 
     def drift_au(self, mjd_tt: float) -> Floats:
         """How far two-body motion may have strayed from the true one at an instant (MJD TT), au, shape (n,).
@@ -263,7 +274,8 @@ class Orbits:
         """The orbits of some rows: a slice, a mask, row numbers, or one row number."""
         index = np.atleast_1d(np.arange(len(self))[rows])
         numbers = self._handle.rows().reshape(-1, _ROW)[index]
-        return _orbits_again(numbers, None if self.name is None else self.name[index], ())
+        name, line = (None if column is None else column[index] for column in (self.name, self.line))
+        return _orbits_again(numbers, name, (), line)
 
     def __len__(self) -> int:
         return len(self._handle)
@@ -272,7 +284,7 @@ class Orbits:
         raise AttributeError(f"Orbits: {attribute} cannot be set; Orbits do not change")
 
     def __reduce__(self) -> tuple[Any, ...]:
-        return _orbits_again, (self._handle.rows(), self.name, self.rejected)
+        return _orbits_again, (self._handle.rows(), self.name, self.rejected, self.line)
 
     def __repr__(self) -> str:
         bad, refused = int(np.count_nonzero(self.bad)), len(self.rejected)
@@ -286,6 +298,6 @@ class Orbits:
 _SHORTEST_LINE = 79
 
 
-def _orbits_again(numbers: Any, name: Any, rejected: Any) -> Orbits:
+def _orbits_again(numbers: Any, name: Any, rejected: Any, line: Any) -> Orbits:
     handle = _engine.Orbits.from_rows(np.ascontiguousarray(numbers).reshape(-1))
-    return Orbits._of(handle, name, rejected)
+    return Orbits._of(handle, name, rejected, line)

@@ -13,6 +13,7 @@ import click
 from ._run import DONE, DONE_WITH_REJECTED
 
 if TYPE_CHECKING:
+    from ..io.lists import Lists
     from ..io.plan import Plan
     from ..io.targets import Targets
 
@@ -26,6 +27,55 @@ def given_list(targets: Path | None, bodies: Sequence[str] | None) -> None:
         raise click.UsageError("Missing argument 'TARGETS' (or name bodies of the solar system: --bodies).")
     if targets is not None and bodies is not None:
         raise click.UsageError(f"both TARGETS ({targets}) and --bodies are given; one of them is needed")
+
+
+def given_lists(targets: Sequence[Path], bodies: Sequence[str] | None) -> None:
+    """Refuses a call with both files and bodies, or with a file twice."""
+    if targets and bodies is not None:
+        raise click.UsageError(f"both TARGETS ({targets[0]}) and --bodies are given; one of them is needed")
+    doubled = next((path for i, path in enumerate(targets) if path in targets[:i]), None)
+    if doubled is not None:
+        raise click.UsageError(f"{doubled} is given twice")
+
+
+def read_lists(
+    plan: Plan,
+    targets: Sequence[Path],
+    bodies: Sequence[str] | None = None,
+    *,
+    quiet: bool,
+    with_limits: bool = False,
+) -> Lists:
+    """The targets of every file, whatever kind each holds, and of the plan's own bodies."""
+    from ..io.lists import Lists
+
+    if not targets and bodies is None and not plan.bodies:
+        raise click.UsageError(
+            "Missing argument 'TARGETS' (or name bodies of the solar system: --bodies, "
+            "or bodies in the plan's [targets])."
+        )
+    parts = [read_list(plan, path, quiet=quiet, with_limits=with_limits) for path in targets]
+    named = tuple(dict.fromkeys((*(bodies or ()), *plan.bodies)))
+    if named:
+        parts.append(read_list(plan, None, named, quiet=quiet, with_limits=with_limits))
+    return Lists(parts)
+
+
+def called_with(targets: Sequence[Path], bodies: Sequence[str] | None) -> list[object]:
+    """The words of a command line that name the targets."""
+    return [*targets, *(("--bodies", ",".join(bodies)) if bodies else ())]
+
+
+def tell_far(status_words: Any) -> None:
+    """Says of how many orbits the epoch is too far away."""
+    far = int((status_words == "far_from_epoch").sum())
+    if far:
+        were = "orbit is" if far == 1 else "orbits are"
+        print(
+            f"hourarc: warning: {far:,} {were} so far from the epoch that two-body motion may be off by more "
+            "than 5″; take elements of a nearer epoch, or hourarc.Orbits.advance",
+            file=sys.stderr,
+        )
 
 
 def to_stdout(output: Path | None) -> bool:
@@ -75,7 +125,11 @@ def read_list(
 
 
 def write_list(
-    output: Path | None, main: Any, companions: dict[str, Any], targets: Targets, record: dict[str, Any]
+    output: Path | None,
+    main: Any,
+    companions: dict[str, Any],
+    targets: Targets | Lists,
+    record: dict[str, Any],
 ) -> list[Path]:
     """The result, its companions by the word in their name, and the rejected rows: all files or none."""
     from ..io.whole import WholeFiles
@@ -120,7 +174,7 @@ def tell(report: str, output: Path | None, written: list[Path]) -> None:
         print("\nWritten: " + ", ".join(str(path) for path in written))
 
 
-def tell_rejected(targets: Targets, written: list[Path]) -> int:
+def tell_rejected(targets: Targets | Lists, written: list[Path]) -> int:
     """The first rejected rows, on standard error. Returns the exit code."""
     rejected = targets.rejected
     if not len(rejected):

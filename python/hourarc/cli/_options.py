@@ -134,6 +134,7 @@ NIGHT, INSTANT, BODY_NAMES, QUANTITIES = Night(), Instant(), BodyNames(), Quanti
 
 plan = click.argument("plan", type=FILE, metavar="PLAN.toml")
 targets = click.argument("targets", type=FILE, required=False, metavar="[TARGETS]")
+target_lists = click.argument("targets", type=FILE, nargs=-1, metavar="[TARGETS]...")
 bodies = click.option(
     "--bodies",
     type=BODY_NAMES,

@@ -44,7 +44,7 @@ def command(folder: Path, night: datetime.date, replace: bool, threads: int | No
                 file=sys.stderr,
             )
     output = folder / "windows.parquet"
-    code = plan_night(plan, targets, night, output=output, threads=threads, quiet=quiet)
+    code = plan_night(plan, (targets,), night, output=output, threads=threads, quiet=quiet)
     if not quiet:
         print(f"\nThe same by hand:\n  hourarc night {plan} {targets} --night {night} -o {output}")
     return code

@@ -15,7 +15,7 @@ if TYPE_CHECKING:
 
 @click.command(short_help="Where everything stands at one instant.")
 @_options.plan
-@_options.targets
+@_options.target_lists
 @click.option(
     "--at", type=_options.INSTANT, required=True, help="The instant, UTC, such as 2026-03-10T03:00."
 )
@@ -25,7 +25,7 @@ if TYPE_CHECKING:
 @_options.quiet
 def command(
     plan: Path,
-    targets: Path | None,
+    targets: tuple[Path, ...],
     at: np.datetime64,
     bodies: tuple[str, ...] | None,
     output: Path | None,
@@ -35,8 +35,12 @@ def command(
     """Altitude, azimuth, airmass, hour angle, declination of date, parallactic angle and the angles to
     Moon and Sun of every target of TARGETS at one instant.
 
-    TARGETS is a table as for `hourarc night`. Of PLAN.toml, [site] and [columns] are used; the limits are
-    not. If there are any, the rows that have no place are listed in FILE.rejected.csv.
+    TARGETS are tables as for `hourarc night`, or files of orbits in the Minor Planet Center's formats, in any
+    mixture; bodies of the plan's [targets] are added. For what belongs to the solar system there are
+    besides: distances, phase angle, elongation, magnitude, motion, illuminated fraction and diameter.
+
+    Of PLAN.toml, [site], [columns] and [targets] are used; the limits are not. If there are any, the rows
+    that have no place are listed in FILE.rejected.csv.
     """
     import hourarc
 
@@ -45,18 +49,22 @@ def command(
     from ..io.results import places_table
     from ..report.sky import sky_report
 
-    _lists.given_list(targets, bodies)
-    _lists.check_output(output, plan, targets)
+    _lists.given_lists(targets, bodies)
+    _lists.check_output(output, plan, *targets)
     read = read_plan(plan)
     site = read.site()
-    rows = _lists.read_list(read, targets, bodies, quiet=quiet)
-    places = hourarc.place(site, rows.part(), at, columns=hourarc.PLACE_COLUMNS, threads=threads)
-    table = places_table(places, rows)
+    rows = _lists.read_lists(read, targets, bodies, quiet=quiet)
+    tables = []
+    for part in rows:
+        places = hourarc.place(site, part.part(), at, columns=hourarc.PLACE_COLUMNS, threads=threads)
+        _lists.tell_far(places.status_words)
+        tables.append(places_table(places, part))
+    table = rows.join(tables)
     lights = hourarc.place(site, hourarc.Bodies(["sun", "moon"]), at)
     called = command_line(
         "sky",
         plan,
-        *((targets,) if targets else ("--bodies", ",".join(bodies or ()))),
+        *_lists.called_with(targets, bodies),
         "--at",
         at,
         *(("-o", output) if output else ()),

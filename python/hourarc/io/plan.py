@@ -9,7 +9,9 @@ is laid out.
                  { column = "RA", unit = "hourangle" }, or { value = 1991.25 } for all rows
     [targets]    layout ("csv", "tsv", "spaces", "ecsv", "fits", "votable", "parquet"), header (true or
                  false), table (the name or number of the table in a FITS or VOTable file), missing (texts
-                 for "not known")
+                 for "not known"), kind ("table" or "mpc_orbits", the Minor Planet Center's lines; without it
+                 each file is taken for what it looks like), bodies (names such as "moon": targets beside
+                 those of the files)
 
 Only `[site]` is needed. An unknown key is an error that names its line and the nearest known key.
 """
@@ -34,6 +36,7 @@ from .skyline import read_skyline
 from .tables import LAYOUTS
 from .targets import TargetLayout, Targets
 
+_KINDS = ("table", "mpc_orbits")
 _SECTIONS = ("site", "limits", "columns", "targets")
 
 
@@ -49,6 +52,8 @@ class Plan:
     limit_columns: dict[str, str | int] = field(default_factory=dict)
     columns: dict[str, ColumnSpec] = field(default_factory=dict)
     layout: TargetLayout = field(default_factory=TargetLayout)
+    #: Bodies of the solar system that are targets beside those of the files.
+    bodies: tuple[str, ...] = ()
     _text: str = ""
 
     def site(self) -> Any:
@@ -173,6 +178,7 @@ def read_plan(path: str | Path) -> Plan:
         key: column_spec(key, value, plan.where("columns", key)) for key, value in columns.items()
     }
     plan.layout = _layout(plan, data.get("targets", {}))
+    plan.bodies = _bodies(plan, data.get("targets", {}))
     return plan
 
 
@@ -239,7 +245,7 @@ def _site_value(plan: Plan, key: str, value: Any) -> Any:
 
 
 def _layout(plan: Plan, content: dict[str, Any]) -> TargetLayout:
-    _check_keys(plan, "targets", content, ("layout", "header", "table", "missing"))
+    _check_keys(plan, "targets", content, ("layout", "kind", "header", "table", "missing", "bodies"))
     layouts = tuple(dict.fromkeys(LAYOUTS.values()))
 
     def wrong(key: str, needed: str) -> WrongInput:
@@ -250,10 +256,28 @@ def _layout(plan: Plan, content: dict[str, Any]) -> TargetLayout:
     layout, header, table, missing = (content.get(key) for key in ("layout", "header", "table", "missing"))
     if layout is not None and layout not in layouts:
         raise wrong("layout", "one of " + ", ".join(layouts))
+    kind = content.get("kind")
+    if kind is not None and kind not in _KINDS:
+        raise wrong("kind", "one of " + ", ".join(_KINDS))
     if header is not None and not isinstance(header, bool):
         raise wrong("header", "true or false")
     if table is not None and (isinstance(table, bool) or not isinstance(table, (int, str))):
         raise wrong("table", "the table's name or number")
     if missing is not None and not (isinstance(missing, list) and all(isinstance(m, str) for m in missing)):
         raise wrong("missing", "a list of texts")
-    return TargetLayout(layout, header, table, tuple(missing or ()))
+    return TargetLayout(layout, kind, header, table, tuple(missing or ()))
+
+
+def _bodies(plan: Plan, content: dict[str, Any]) -> tuple[str, ...]:
+    import hourarc
+
+    names = content.get("bodies", [])
+    if not isinstance(names, list):
+        raise WrongInput(
+            f"{plan.where('targets', 'bodies')}: bodies is given {names!r}; a list of names is needed"
+        )
+    try:
+        return tuple(map(str, hourarc.Bodies(names).name))
+    except (ValueError, TypeError) as error:
+        said = str(error).removeprefix("Bodies: name: ")
+        raise WrongInput(f"{plan.where('targets', 'bodies')}: bodies: {said}") from error

@@ -46,6 +46,8 @@ class Rejected:
     column: list[str] = field(default_factory=list)
     value: list[str] = field(default_factory=list)
     reason: list[str] = field(default_factory=list)
+    #: The source of each, where there are several; otherwise empty.
+    source: list[str] = field(default_factory=list)
 
     def add(self, row: int, name: str, column: str, value: str, reason: str) -> None:
         """Puts one row on the list."""
@@ -68,5 +70,6 @@ class Rejected:
         """One entry as a sentence for a terminal."""
         value = self.value[index]
         given = f" = {value!r}" if value else ""
+        source = f"{self.source[index]}, " if self.source else ""
         where = f', column "{self.column[index]}"' if self.column[index] else ""
-        return f"row {self.row[index]}{where}{given}: {self.reason[index]}"
+        return f"{source}row {self.row[index]}{where}{given}: {self.reason[index]}"

@@ -12,6 +12,7 @@ from typing import Any
 import numpy as np
 
 from ..limits import LIMITS, SUN_CAUTION
+from .lists import Lists
 from .plan import Plan
 from .targets import Targets
 
@@ -22,7 +23,7 @@ def provenance(
     site: Any,
     command: str = "",
     limits: Any = None,
-    targets: Targets | None = None,
+    targets: Targets | Lists | None = None,
     done: str = "planned",
     **about: Any,
 ) -> dict[str, Any]:
@@ -38,22 +39,29 @@ def provenance(
     record.update(about)
     record["plan"] = {"file": plan.path.name, "sha256": plan.sha256}
     if targets is not None:
-        origin: dict[str, Any] = {"bodies": list(targets.bodies)}
-        if targets.path is not None:
-            origin = {"file": targets.path.name, "sha256": targets.sha256}
-        record["targets"] = origin | {
-            "rows_read": targets.rows_read,
-            done: len(targets),
-            "rejected": len(targets.rejected),
-        }
+        records = [
+            _list_record(each, done) for each in (targets if isinstance(targets, Lists) else [targets])
+        ]
+        record["targets"] = records[0] if len(records) == 1 else records
     record["site"] = site_record(site)
     if limits is not None:
         record["limits"] = limits_record(plan, limits)
-        if _sun_limit_lowered(limits):
+        if sun_limit_lowered(limits):
             record["caution"] = f"The Sun separation limit was lowered below its default. {SUN_CAUTION}"
     record["earth_orientation"] = hourarc.Orientation.packaged().provenance.to_dict()
     record["models"] = models_record()
     return record
+
+
+def _list_record(targets: Targets, done: str) -> dict[str, Any]:
+    origin: dict[str, Any] = {"bodies": list(targets.bodies)}
+    if targets.path is not None:
+        origin = {"file": targets.path.name, "sha256": targets.sha256}
+    return origin | {
+        "rows_read": targets.rows_read,
+        done: len(targets),
+        "rejected": len(targets.rejected),
+    }
 
 
 def site_record(site: Any) -> dict[str, Any]:
@@ -82,7 +90,8 @@ def limits_record(plan: Plan, limits: Any) -> dict[str, Any]:
     return {key: columns.get(key, value) for key, value in limits.to_dict().items()}
 
 
-def _sun_limit_lowered(limits: Any) -> bool:
+def sun_limit_lowered(limits: Any) -> bool:
+    """Whether a target may stand nearer to the Sun than by default."""
     key = "sun_separation_min_deg"
     return limits[key] is None or bool(np.min(limits[key], initial=180.0) < LIMITS[key].default)
 

@@ -45,6 +45,16 @@ DECIMALS = {
     "stop_error_s": 6,
     "start_scatter_s": 3,
     "stop_scatter_s": 3,
+    "phase_angle_deg": 10,
+    "elongation_deg": 10,
+    "motion_position_angle_deg": 6,
+    "bright_limb_position_angle_deg": 6,
+    "magnitude_v": 3,
+    "rate_arcsec_min": 6,
+    "illuminated_fraction": 6,
+    "angular_diameter_arcsec": 4,
+    "distance_au": 12,
+    "heliocentric_distance_au": 12,
 }
 
 

@@ -277,6 +277,22 @@ def _one_chunk(column: pa.ChunkedArray) -> pa.Array:
     return joined if isinstance(joined, pa.Array) else joined.chunk(0)
 
 
+def file_bytes(path: Path, first: int | None = None) -> bytes:
+    """The bytes of a file, or the whole lines among the first so many; what ends in .gz is unpacked."""
+    if first is not None:
+        import gzip
+        import zlib
+
+        opened = gzip.open(path) if path.suffix.lower() == ".gz" else open(path, "rb")  # noqa: SIM115
+        try:
+            with opened as handle:
+                head = handle.read(first)
+        except (EOFError, zlib.error, gzip.BadGzipFile):
+            return b""  # whoever reads the whole says what is wrong
+        return head if len(head) < first else head[: head.rfind(b"\n") + 1]
+    return _bytes(path)
+
+
 def _bytes(path: Path) -> bytes:
     if path.suffix.lower() == ".gz":
         import gzip

@@ -37,6 +37,8 @@ class TargetLayout:
     """The plan's `[targets]`: how the file is laid out, where the suffix does not say so."""
 
     layout: str | None = None
+    #: "table" or "mpc_orbits"; None: by what the file holds.
+    kind: str | None = None
     header: bool | None = None
     table: int | str | None = None
     #: Texts that stand for "not known", besides an empty cell.
@@ -66,6 +68,8 @@ class Targets:
     time: np.ndarray | None = None
     #: The names of bodies, where they are the targets: row i is the i-th of them, and there are no columns.
     bodies: tuple[str, ...] = ()
+    #: The `hourarc.Orbits` of the planned rows, where orbits are the targets: there are no columns either.
+    orbits: Any = None
 
     @property
     def source(self) -> str:
@@ -76,9 +80,11 @@ class Targets:
         return len(self.row)
 
     def part(self, start: int = 0, stop: int | None = None) -> Any:
-        """The planned targets, or a slice of them, as a `hourarc.Catalog` or as `hourarc.Bodies`."""
+        """The planned targets, or a slice of them, as a `hourarc.Catalog`, `Bodies` or `Orbits`."""
         import hourarc
 
+        if self.orbits is not None:
+            return self.orbits if (start, stop) == (0, None) else self.orbits[start:stop]
         if self.bodies:
             return hourarc.Bodies([self.bodies[row - 1] for row in self.row[start:stop]])
         part = {key: values[start:stop] for key, values in self.columns.items()}
@@ -107,6 +113,7 @@ class Targets:
         self.columns = {key: values[keep] for key, values in self.columns.items()}
         self.limits = {key: values[keep] for key, values in self.limits.items()}
         self.time = None if self.time is None else self.time[keep]
+        self.orbits = self.orbits if self.orbits is None or keep.all() else self.orbits[keep]
         self.check_counts()
 
     def check_counts(self) -> None:
@@ -138,6 +145,8 @@ def read_targets(
     import pyarrow as pa
 
     path, layout = Path(path), layout or TargetLayout()
+    if layout.kind == "mpc_orbits" or (layout.kind is None and _may_be_orbits(path, layout)):
+        return _orbits(path, limit_columns or {}, with_time)
     table = open_table(path, layout.layout, header=layout.header, table=layout.table)
     found = find_columns(table.names, table.units, columns or {}, str(path), with_time=with_time)
     of_limits = {
@@ -179,7 +188,7 @@ def read_targets(
     good = faults.good
     targets = Targets(
         path=path,
-        sha256=_sha256(path),
+        sha256=file_sha256(path),
         rows_read=count + len(content.ragged),
         row=content.row[good],
         name=name.filter(pa.array(good)),
@@ -198,6 +207,25 @@ def read_targets(
             f"{path}: none of the {targets.rows_read} rows can be planned; the first: {rejected.line(0)}"
         )
     return targets
+
+
+def _may_be_orbits(path: Path, layout: TargetLayout) -> bool:
+    from .orbits import holds_orbits
+
+    return layout.layout is None and layout.header is None and layout.table is None and holds_orbits(path)
+
+
+def _orbits(path: Path, limit_columns: Mapping[str, str | int], with_time: bool) -> Targets:
+    from .orbits import read_orbits
+
+    if with_time:
+        raise WrongInput(f"{path}: the file holds orbits; a table with an instant in every row is needed")
+    if limit_columns:
+        key = next(iter(limit_columns))
+        raise WrongInput(
+            f"{path}: {key} is taken from a column, and orbit lines have no columns; give one value"
+        )
+    return read_orbits(path)
 
 
 def named_bodies(names: Sequence[str]) -> Targets:
@@ -341,6 +369,7 @@ def _range(spec: Field) -> str:
     return f"{spec.low:g} to {spec.high:g} {spec.unit}"
 
 
-def _sha256(path: Path) -> str:
+def file_sha256(path: Path) -> str:
+    """The SHA-256 of a file, as hexadecimal digits."""
     with open(path, "rb") as handle:
         return hashlib.file_digest(handle, "sha256").hexdigest()

@@ -71,10 +71,9 @@ def write_rejected(
     with files.create(path) as passing, open(passing, "w", encoding="utf-8", newline="") as handle:
         handle.writelines(f"# {line}\n" for line in _lines(provenance))
         writer = csv.writer(handle, lineterminator="\n")
-        writer.writerow(("row", "name", "column", "value", "reason"))
-        writer.writerows(
-            zip(rejected.row, rejected.name, rejected.column, rejected.value, rejected.reason, strict=True)
-        )
+        names = [*(["source"] if rejected.source else []), "row", "name", "column", "value", "reason"]
+        writer.writerow(names)
+        writer.writerows(zip(*(getattr(rejected, name) for name in names), strict=True))
 
 
 def write_text(table: pa.Table, handle: IO[bytes], provenance: Mapping[str, Any], format: str) -> None:

@@ -81,8 +81,8 @@ def _sky(almanac: Any) -> list[str]:
 def _with_windows(windows: pa.Table) -> list[str]:
     if not windows.num_rows:
         return ["No target has a window"]
-    row, duration = windows["row"].to_numpy(), windows["duration_s"].to_numpy() / 3600.0
-    starts = np.flatnonzero(np.diff(row, prepend=row[0] - 1))
+    target, duration = _target(windows), windows["duration_s"].to_numpy() / 3600.0
+    starts = np.flatnonzero(np.diff(target, prepend=target[0] - 1))
     per_target = np.add.reduceat(duration, starts)
     have = "target has" if len(starts) == 1 else "targets have"
     median, longest, total = np.median(per_target), per_target.max(), per_target.sum()
@@ -111,7 +111,7 @@ def _best_placed(windows: pa.Table) -> list[str]:
     airmass = np.round(windows["best_airmass"].to_numpy(), 3)
     order = np.lexsort((-windows["duration_s"].to_numpy(), np.where(np.isfinite(airmass), airmass, np.inf)))
     # One line a target, in the order of the list of windows.
-    _, first = np.unique(windows["row"].to_numpy()[order], return_index=True)
+    _, first = np.unique(_target(windows)[order], return_index=True)
     rows = [["name", "airmass", "at", "from", "until", "hours", "opens", "closes"]]
     for i in order[np.sort(first)][:EXAMPLES]:
         one = {
@@ -135,6 +135,16 @@ def _best_placed(windows: pa.Table) -> list[str]:
         )
     right = [False, True, False, False, False, True, False, False]
     return ["", "Best placed:", *aligned(rows, right, indent="    ")]
+
+
+def _target(windows: pa.Table) -> np.ndarray:
+    """A number for the target of each window: rows of several lists may have the same."""
+    row: np.ndarray = windows["row"].to_numpy()
+    if "source" not in windows.column_names:
+        return row
+    _, source = np.unique(windows["source"].to_numpy(), return_inverse=True)
+    _, number = np.unique(np.stack([source, row]), axis=1, return_inverse=True)
+    return number.reshape(-1)
 
 
 def _clock(windows: pa.Table, name: str, index: int) -> str:

@@ -83,10 +83,13 @@ impl Orbits {
         Ok(Orbits { rows: rows.map_err(raise)? })
     }
 
-    /// From the lines of a text, with their designations and the lines that are no orbits.
+    /// From the lines of a text, with their designations and numbers, and the lines that are no orbits.
     #[staticmethod]
-    fn from_mpc(py: Python<'_>, text: &str) -> (Self, Vec<String>, Rejected) {
-        py.detach(|| {
+    fn from_mpc<'py>(
+        py: Python<'py>,
+        text: &str,
+    ) -> (Self, Vec<String>, Bound<'py, PyArray1<i64>>, Rejected) {
+        let (rows, names, numbers, rejected) = py.detach(|| {
             let lines = mpc::orbit_lines(text);
             let rejected = lines
                 .rejected
@@ -94,8 +97,11 @@ impl Orbits {
                 .map(|line| (line.line, line.columns.0, line.columns.1, line.reason.clone()))
                 .collect();
             let rows = lines.orbits();
-            (Orbits { rows }, lines.rows.into_iter().map(|row| row.designation).collect(), rejected)
-        })
+            let numbers: Vec<i64> = lines.rows.iter().map(|row| row.line as i64).collect();
+            let names = lines.rows.into_iter().map(|row| row.designation).collect();
+            (rows, names, numbers, rejected)
+        });
+        (Orbits { rows }, names, column(py, numbers), rejected)
     }
 
     /// From what [`Orbits::rows`] gave.
