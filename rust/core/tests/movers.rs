@@ -130,6 +130,7 @@ fn columns(
     let out = PlaceColumns {
         sky_model: SkyModel::default(),
         columns: wanted.iter().copied().zip(values.iter_mut().map(|values| &mut values[..])).collect(),
+        sky_model: SkyModel::default(),
         status: &mut status,
     };
     let mut workers = Workers::new(threads, &mut go);
@@ -361,6 +362,80 @@ fn near_bodies_break_no_solver() {
     }
     println!("{compared} events");
     assert!(compared > 60);
+}
+
+/// Windows of what passes at 0.01 au to 0.006 au: at every minute of two days the exact chain says the same as the windows, but for
+/// a second about their edges.
+#[test]
+fn near_bodies_have_their_windows() {
+    let mut random = Random(23);
+    let degrees = |value: f64| Some(Column::All(value * RADIANS_PER_DEGREE));
+    let mut limits = Limits::none(AirmassModel::KastenYoung1989);
+    limits.altitude_min = degrees(15.0);
+    limits.sun_altitude_max = degrees(-6.0);
+    limits.moon_separation_min = degrees(40.0);
+    limits.sun_separation_min = degrees(50.0);
+    let (mut inside, mut outside) = (0, 0);
+    for number in 0..16 {
+        let setting = Setting::new(random.between(-180.0, 180.0), [-24.6, 0.0, 52.0, 68.0][number % 4]);
+        let start = mjd(61_110.0 + 1.9 * number as f64);
+        let closest = tdb(start).plus_seconds(random.between(0.2, 1.8) * 86_400.0);
+        let away = unit(random.direction());
+        let speed_au_d = random.between(5.0, 20.0) * 86_400.0 / 149_597_870.7;
+        let velocity = scale(speed_au_d, unit(cross(away, random.direction())));
+        let distance_au = [0.01, 0.006][number % 2];
+        let mut orbits = Orbits::new();
+        push(&mut orbits, passing(&setting.ephemeris, closest, scale(distance_au, away), velocity), closest);
+        let targets = Targets::Orbits(&orbits);
+        let stop = Utc::from_nanoseconds(start.nanoseconds() + 2 * DAY_NS);
+        let track = track_for(&setting.observer(), start, stop).unwrap();
+        let mut days = Days::new(setting.observer(), &track, start, stop).unwrap();
+        let mut go = KEEP_GOING;
+        let table = window_table(&mut days, &targets, &limits, None, &mut Workers::new(1, &mut go)).unwrap();
+        for minute in 0..2 * 1440 {
+            let at = start.nanoseconds() + i64::from(minute) * 60_000_000_000;
+            let near = |edge: &i64| (edge - at).abs() < 1_000_000_000;
+            if table.start.iter().chain(&table.stop).any(near) {
+                continue;
+            }
+            let within = table.start.iter().zip(&table.stop).any(|(&start, &stop)| start <= at && at < stop);
+            let sky = setting.sky(Utc::from_nanoseconds(at));
+            let direction =
+                |target: Moving<'_>| target.direction(&setting.ephemeris, &sky).unwrap().direction;
+            let target = direction(Moving::Orbit(&orbits, 0));
+            let [sun, moon] = [Body::Sun, Body::Moon].map(|body| direction(body.into()));
+            let altitude = |direction: Vector| rotate(&sky.local, direction)[2].asin() / RADIANS_PER_DEGREE;
+            let apart = |body: Vector| angle(target, body) / RADIANS_PER_DEGREE;
+            let holds = altitude(target) >= 15.0
+                && altitude(sun) <= -6.0
+                && apart(moon) >= 40.0
+                && apart(sun) >= 50.0;
+            assert_eq!(holds, within, "case {number} minute {minute}");
+            if holds { inside += 1 } else { outside += 1 }
+        }
+    }
+    println!("{inside} samples inside, {outside} outside");
+    assert!(inside > 2000);
+}
+
+/// The Moon of Meeus, *Astronomical Algorithms*, 2nd ed., examples 47.a and 48.a [M], seen from the Earth's centre on
+/// 1992-04-12 0h TD: phase angle 69.0756°, illuminated fraction 0.6786, position angle of the bright limb 285.0°. The distance is
+/// that of DE440 with light time, 34 km from the geometric 368405.54 km.
+#[test]
+fn the_moon_of_meeus() {
+    let setting = Setting::new(0.0, 0.0);
+    let tai = Instant::<hourarc_core::time::Tt>::from_mjd(48_724.0, 0.0).to_tai();
+    let celestial = hourarc_core::astrometry::Celestial::exact(tai.to_tt(), &setting.ephemeris).unwrap();
+    let sky = setting.observer().sky_from(tai, &celestial).geocentric(&celestial);
+    let moon = appearance(Body::Moon.into(), &setting.ephemeris, &sky, Isa::best()).unwrap();
+    assert!((moon.phase_angle / RADIANS_PER_DEGREE - 69.0756).abs() < 0.01, "{}", moon.phase_angle);
+    let phase = moon.phase_angle / RADIANS_PER_DEGREE;
+    println!("phase angle {phase:.4}°, illuminated fraction {:.5}", moon.illuminated_fraction);
+    // 0.01° of phase is 0.8e-4, and the printed value has four digits.
+    assert!((moon.illuminated_fraction - 0.6786).abs() < 1.3e-4);
+    let limb = moon.bright_limb_position_angle / RADIANS_PER_DEGREE;
+    assert!((limb - 285.0).abs() < 0.06, "{limb}");
+    assert!((moon.distance_au * 149_597_870.7 - 368_405.54).abs() < 35.0);
 }
 
 /// At a tenth of the Moon's distance the series is no longer exact, and says by how much.
