@@ -132,6 +132,25 @@ fn seconds(nanoseconds: i64) -> f64 {
     nanoseconds as f64 / NANOSECONDS_PER_SECOND
 }
 
+/// The reasons of the rows that are up; the code of [`Cause::None`], 0, in the others.
+///
+/// Functions of their own, because bytes may be anything to the compiler: only of arguments does it know that
+/// they do not overlap.
+#[inline(always)]
+fn keep_where(up: &[bool], reasons: &[u8], out: &mut [u8]) {
+    for ((out, &reason), &up) in out.iter_mut().zip(reasons).zip(up) {
+        *out = reason & u8::from(up).wrapping_neg();
+    }
+}
+
+/// The worse of two statuses, as [`Status::worst`](crate::error::Status::worst).
+#[inline(always)]
+fn worst(status: &mut [u8], others: &[u8]) {
+    for (status, &other) in status.iter_mut().zip(others) {
+        *status = (*status).max(other);
+    }
+}
+
 impl Kernel for Lookup<'_> {
     type Output = ();
 
@@ -148,11 +167,8 @@ impl Kernel for Lookup<'_> {
         for row in 0..rows {
             up[row] = (start[row] <= when) & (when < stop[row]);
         }
-        let (closes, status) = (&mut self.stop_reason[..rows], &mut self.status[..rows]);
-        for row in 0..rows {
-            closes[row] = if up[row] { reason[row] } else { Cause::None as u8 };
-            status[row] = status[row].max(of_windows[row]);
-        }
+        keep_where(up, reason, &mut self.stop_reason[..rows]);
+        worst(&mut self.status[..rows], of_windows);
         if let Some(left) = &mut self.seconds_left {
             let left = &mut left[..rows];
             for row in 0..rows {
