@@ -10,8 +10,8 @@ use super::targets::Moving;
 use crate::constants::LIGHT_TIME_AU_S;
 use crate::constants::SECONDS_PER_DAY;
 use crate::ephemeris::orbits::Orbits;
-use crate::ephemeris::photometry::{self, Geometry};
-use crate::ephemeris::{Body, Ephemeris};
+use crate::ephemeris::photometry::{self, Brightness, Geometry};
+use crate::ephemeris::{Body, Ephemeris, State};
 use crate::error::Status;
 use crate::math::dispatch::Isa;
 use crate::math::vector::{Vector, dot, norm, scale, sub};
@@ -72,6 +72,12 @@ fn orbit_appearance(
     let tdb = sky.tdb();
     let sun = ephemeris.state(Body::Sun, tdb)?;
     let seen = orbits.astrometric(isa, row, tdb, observer_state(sky), sun);
+    Ok(appearance_of_orbit(orbits.brightness(row), seen, sun, sky))
+}
+
+/// How a minor body looks that is seen along a vector of
+/// [`Orbits::astrometric_motion_batch`], with its rate; `sun` as there.
+pub fn appearance_of_orbit(brightness: Brightness, seen: State, sun: State, sky: &Sky) -> Appearance {
     let light_time_d = norm(seen.position) * LIGHT_TIME_AU_S / SECONDS_PER_DAY;
     // Where the Sun was, as the observer counts: it moves straight.
     let to_sun: Vector =
@@ -79,7 +85,7 @@ fn orbit_appearance(
     let geometry = Geometry::new(sub(seen.position, to_sun), seen.position);
     let of_triangle =
         Appearance::of(&geometry, seen.position, seen.velocity, sub(to_sun, seen.position), sky);
-    Ok(Appearance { magnitude: orbits.brightness(row).magnitude(&geometry), ..of_triangle })
+    Appearance { magnitude: brightness.magnitude(&geometry), ..of_triangle }
 }
 
 fn body_appearance(body: Body, ephemeris: &Ephemeris, sky: &Sky) -> std::result::Result<Appearance, Status> {

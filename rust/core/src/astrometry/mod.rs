@@ -16,7 +16,7 @@ pub mod space_motion;
 pub mod targets;
 pub mod track;
 
-pub use appearance::{Appearance, appearance};
+pub use appearance::{Appearance, appearance, appearance_of_orbit};
 pub use catalog::{Catalog, CatalogColumns, Star, StarColumns};
 pub use chain::{
     BodyDirection, body_direction, coordinate_direction, near_direction, observer_state, orbit_direction,

@@ -2,9 +2,10 @@
 
 use super::chain::Chain;
 use super::columns::{PlaceColumn, PlaceColumns};
-use crate::astrometry::{Appearance, Moving, Sky, appearance};
+use crate::astrometry::{Appearance, Moving, Sky, Targets, appearance, appearance_of_orbit, observer_state};
 use crate::constants::{RADIANS_PER_ARCSECOND, RADIANS_PER_DEGREE};
-use crate::ephemeris::Body;
+use crate::ephemeris::orbits::Orbits;
+use crate::ephemeris::{Body, State};
 use crate::events::moon_age_d;
 
 const MINUTES_PER_DAY: f64 = 1440.0;
@@ -73,23 +74,57 @@ pub(super) fn fill(
         return;
     }
     clear(out, rows.clone());
+    if let Targets::Orbits(orbits) = chain.targets {
+        fill_orbits(chain, orbits, sky, target, rows, out);
+        return;
+    }
     let wants_age = out.wants(PlaceColumn::MoonAgeD);
     for (row, target) in rows.zip(target..) {
         let Some(target) = chain.targets.moving(target) else { return };
         let Ok(looks) = appearance(target, chain.observer.ephemeris, sky, chain.isa) else { continue };
-        let age = match target {
-            Moving::Body(Body::Moon) if wants_age => moon_age_d(chain.observer, sky.tai).unwrap_or(f64::NAN),
-            _ => f64::NAN,
-        };
-        for (column, values) in &mut out.columns {
-            match column {
-                PlaceColumn::MoonAgeD => values[row] = age,
-                _ => {
-                    if let Some(value) = column.value(Some(&looks)) {
-                        values[row] = value;
-                    }
-                }
+        write(&looks, row, out);
+        if let (Moving::Body(Body::Moon), true) = (target, wants_age) {
+            let age = moon_age_d(chain.observer, sky.tai).unwrap_or(f64::NAN);
+            for (_, values) in out.columns.iter_mut().filter(|(column, _)| *column == PlaceColumn::MoonAgeD) {
+                values[row] = age;
             }
+        }
+    }
+}
+
+fn fill_orbits(
+    chain: &Chain<'_>,
+    orbits: &Orbits,
+    sky: &Sky,
+    target: usize,
+    rows: std::ops::Range<usize>,
+    out: &mut PlaceColumns<'_>,
+) {
+    /// Rows whose vectors are worked out together.
+    const TOGETHER: usize = 128;
+    let tdb = sky.tdb();
+    let Ok(sun) = chain.observer.ephemeris.state(Body::Sun, tdb) else { return };
+    let observer = observer_state(sky);
+    let mut numbers = [[0.0; TOGETHER]; 6];
+    for first in rows.clone().step_by(TOGETHER) {
+        let count = TOGETHER.min(rows.end - first);
+        let target = target + (first - rows.start);
+        let [x, y, z, vx, vy, vz] = numbers.each_mut().map(|axis| &mut axis[..count]);
+        let of = target..target + count;
+        orbits.astrometric_motion_batch(chain.isa, of, tdb, observer, sun, [x, y, z], [vx, vy, vz]);
+        for i in 0..count {
+            let [x, y, z, vx, vy, vz] = [0, 1, 2, 3, 4, 5].map(|axis| numbers[axis][i]);
+            let seen = State { position: [x, y, z], velocity: [vx, vy, vz] };
+            let looks = appearance_of_orbit(orbits.brightness(target + i), seen, sun, sky);
+            write(&looks, first + i, out);
+        }
+    }
+}
+
+fn write(looks: &Appearance, row: usize, out: &mut PlaceColumns<'_>) {
+    for (column, values) in &mut out.columns {
+        if let Some(value) = column.value(Some(looks)) {
+            values[row] = value;
         }
     }
 }
