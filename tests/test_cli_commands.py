@@ -10,6 +10,7 @@ import sys
 from pathlib import Path
 
 import numpy as np
+import pyarrow.compute as pc
 import pyarrow.parquet as pq
 import pytest
 from hourarc.cli._run import run
@@ -482,3 +483,45 @@ def test_progress_on_a_terminal_only(plan: Path, targets: Path) -> None:
         assert (b"planning" in text) is shown
     os.close(slave)
     os.close(master)
+
+
+# ---- explain -----------------------------------------------------------------------------------------------
+
+
+def test_explain(plan: Path, targets: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    def explain(*arguments: object, code: int = 0) -> tuple[str, str]:
+        assert run(["explain", *map(str, (plan, targets, "--night", "2026-03-10", *arguments))]) == code
+        printed = capsys.readouterr()
+        return printed.out, printed.err
+
+    import hourarc
+
+    names = [line.split(",")[0] for line in targets.read_text().splitlines()[1:]]
+    text, err = explain("--name", names[1])
+    assert text.startswith(f"{names[1]}, night of 2026-03-10, at ") and "all together" in text and err == ""
+    assert explain("--row", 2)[0] == text
+    output = plan.parent / "why.parquet"
+    explain("--row", 2, "-o", output, "-q")
+    table = pq.read_table(output)
+    assert set(table["limit"].to_pylist()) <= set(hourarc.REASON_WORDS)
+    assert set(table["row"].to_pylist()) == {2} and set(table["name"].to_pylist()) == {names[1]}
+    assert b"hourarc.limits" in table.schema.metadata
+    assert explain("--row", 2, "-o", "-")[0].count(f"\n2,{names[1]},") == table.num_rows
+    # The planned windows are what it leaves.
+    assert night(plan, targets, "-q", "-o", plan.parent / "w.parquet") == 0
+    capsys.readouterr()
+    planned = pq.read_table(plan.parent / "w.parquet", filters=[("row", "=", 2)])
+    left = table.filter((pc.field("limit") == "window_min") & ~pc.field("alone"))
+    assert planned.num_rows
+    for edge in ("start", "stop"):
+        assert planned[edge].to_numpy().tolist() == left[edge].to_numpy().tolist()
+
+    assert "--name or --row is needed" in explain(code=2)[1]
+    assert "one of them is needed" in explain("--name", "A", "--row", 1, code=2)[1]
+    assert f'did you mean "{names[1]}"?' in explain("--name", names[1] + "x", code=2)[1]
+    assert "there is no row 999" in explain("--row", 999, code=2)[1]
+    targets.write_text(targets.read_text() + f"{names[0]},10,20\nbad,x,1\n")
+    assert f"2 rows are named '{names[0]}'; one of --row 1, " in explain("--name", names[0], code=2)[1]
+    assert "that row was rejected: row " in explain("--name", "bad", code=2)[1]
+    assert run(["explain", str(plan), "--bodies", "jupiter", "--night", "2026-03-10"]) == 0
+    assert capsys.readouterr().out.startswith("jupiter, night of 2026-03-10")

@@ -20,6 +20,7 @@ from .almanac import Almanac, almanac
 from .earth import Orientation
 from .errors import HourarcError, HourarcWarning
 from .events import Event, Events, rise_transit_set
+from .explain import Explanation, explain
 from .geometry import position_angle, separation
 from .limits import LIMITS, Limits
 from .orbits import Orbits, RejectedLine
@@ -46,6 +47,7 @@ __all__ = [
     "Catalog",
     "Event",
     "Events",
+    "Explanation",
     "Grid",
     "HourarcError",
     "HourarcWarning",
@@ -64,6 +66,7 @@ __all__ = [
     "almanac",
     "earth",
     "errors",
+    "explain",
     "instruction_set",
     "place",
     "position_angle",

@@ -209,7 +209,7 @@ def windows(
 ) -> dict[str, NDArray[Any]]: ...
 def explain(
     site: Site,
-    targets: Catalog | Bodies,
+    targets: Catalog | Bodies | Orbits,
     row: int,
     orientation: Orientation,
     start_ns: int,

@@ -167,6 +167,20 @@ def progress(total: int, quiet: bool, least: int) -> Iterator[Callable[[int], No
         yield bar.update
 
 
+def write_one(output: Path, table: Any, record: dict[str, Any]) -> None:
+    """A result without companions: a file, or CSV to standard output."""
+    from ..io.whole import WholeFiles
+    from ..io.writers import write_table, write_text
+
+    if to_stdout(output):
+        write_text(table, sys.stdout.buffer, record, "csv")
+        sys.stdout.buffer.flush()
+        return
+    with WholeFiles() as files:
+        write_table(table, output, record, files)
+        files.commit()
+
+
 def tell(report: str, output: Path | None, written: list[Path]) -> None:
     """The report, away from the result if that goes to standard output."""
     print(report, file=sys.stderr if to_stdout(output) else sys.stdout)

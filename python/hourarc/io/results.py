@@ -89,6 +89,21 @@ def windows_table(windows: Any, targets: Targets, first: int = 0) -> pa.Table:
     return _table(columns)
 
 
+def explanation_table(explanation: Any, targets: Targets, index: int) -> pa.Table:
+    """A row an interval in which a limit holds, alone or with those above it."""
+    import pyarrow as pa
+
+    table = explanation.to_arrow()
+    count = table.num_rows
+    return _table(
+        {
+            "row": pa.array(np.full(count, targets.row[index])),
+            "name": pa.array([targets.name[index].as_py()] * count, pa.string()),
+            **{name: table[name] for name in ("limit", "alone", "start", "stop")},
+        }
+    )
+
+
 def blocked_table(windows: Any, targets: Targets, first: int = 0) -> pa.Table:
     """A row a target without a window, with what blocks it. Bad rows are rejected, not blocked."""
     import pyarrow as pa
