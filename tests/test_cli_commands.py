@@ -497,20 +497,20 @@ def test_explain(plan: Path, targets: Path, capsys: pytest.CaptureFixture[str]) 
     import hourarc
 
     names = [line.split(",")[0] for line in targets.read_text().splitlines()[1:]]
-    text, err = explain("--name", names[1])
-    assert text.startswith(f"{names[1]}, night of 2026-03-10, at ") and "all together" in text and err == ""
-    assert explain("--row", 2)[0] == text
+    text, err = explain("--name", names[9])
+    assert text.startswith(f"{names[9]}, night of 2026-03-10, at ") and "all together" in text and err == ""
+    assert explain("--row", 10)[0] == text
     output = plan.parent / "why.parquet"
-    explain("--row", 2, "-o", output, "-q")
+    explain("--row", 10, "-o", output, "-q")
     table = pq.read_table(output)
     assert set(table["limit"].to_pylist()) <= set(hourarc.REASON_WORDS)
-    assert set(table["row"].to_pylist()) == {2} and set(table["name"].to_pylist()) == {names[1]}
+    assert set(table["row"].to_pylist()) == {10} and set(table["name"].to_pylist()) == {names[9]}
     assert b"hourarc.limits" in table.schema.metadata
-    assert explain("--row", 2, "-o", "-")[0].count(f"\n2,{names[1]},") == table.num_rows
+    assert explain("--row", 10, "-o", "-")[0].count(f"\n10,{names[9]},") == table.num_rows
     # The planned windows are what it leaves.
     assert night(plan, targets, "-q", "-o", plan.parent / "w.parquet") == 0
     capsys.readouterr()
-    planned = pq.read_table(plan.parent / "w.parquet", filters=[("row", "=", 2)])
+    planned = pq.read_table(plan.parent / "w.parquet", filters=[("row", "=", 10)])
     left = table.filter((pc.field("limit") == "window_min") & ~pc.field("alone"))
     assert planned.num_rows
     for edge in ("start", "stop"):
@@ -518,7 +518,7 @@ def test_explain(plan: Path, targets: Path, capsys: pytest.CaptureFixture[str]) 
 
     assert "--name or --row is needed" in explain(code=2)[1]
     assert "one of them is needed" in explain("--name", "A", "--row", 1, code=2)[1]
-    assert f'did you mean "{names[1]}"?' in explain("--name", names[1] + "x", code=2)[1]
+    assert f'did you mean "{names[9]}"?' in explain("--name", names[9] + "x", code=2)[1]
     assert "there is no row 999" in explain("--row", 999, code=2)[1]
     targets.write_text(targets.read_text() + f"{names[0]},10,20\nbad,x,1\n")
     assert f"2 rows are named '{names[0]}'; one of --row 1, " in explain("--name", names[0], code=2)[1]
