@@ -29,6 +29,7 @@ from .results import STATUS_WORDS
 from .season import GRID_QUANTITIES, Grid, visibility_grid
 from .season_summary import SeasonSummary
 from .site import Site
+from .slots import Revisits, Slots, after_gap, slots
 from .targets import Bodies, Catalog
 from .watch import WATCH_COLUMNS, Moment, Watch
 from .windows import REASON_WORDS, Window, Windows, windows
@@ -57,12 +58,15 @@ __all__ = [
     "Orientation",
     "Places",
     "RejectedLine",
+    "Revisits",
     "SeasonSummary",
     "Site",
+    "Slots",
     "Watch",
     "Window",
     "Windows",
     "__version__",
+    "after_gap",
     "almanac",
     "earth",
     "errors",
@@ -72,6 +76,7 @@ __all__ = [
     "position_angle",
     "rise_transit_set",
     "separation",
+    "slots",
     "visibility_grid",
     "windows",
 ]

@@ -114,6 +114,9 @@ COLUMNS: Mapping[str, Column] = {
     "longest_gap": Column("", "meta.number", "most nights in a row between them that are not useful"),
     "night_hours": Column("h", "time.duration", "hours of all targets together"),
     "useful_targets": Column("", "meta.number", "number of targets to which the night is useful"),
+    # slots and gaps
+    "window": Column("", "meta.record", "row of the window, from 0"),
+    "by_gap": Column("", "meta.code", "whether the gap after the last visit sets the start"),
     # explanations
     "limit": Column("", "meta.code", "the limit"),
     "alone": Column("", "meta.code", "true: where it alone holds; false: where all above it hold too"),
