@@ -35,7 +35,19 @@ def test_every_unit_is_one():
         u.Unit(column.unit)
         assert column.unit == "" or name.endswith(
             (
-                *("_deg", "_s", "_d", "_arcsec", "_mag_arcsec2", "_mas", "_au", "hours", "hours_moonless"),
+                *(
+                    "_deg",
+                    "_s",
+                    "_d",
+                    "_arcsec",
+                    "_mag_arcsec2",
+                    "_mas",
+                    "_au",
+                    "_v",
+                    "_arcsec_min",
+                    "hours",
+                    "hours_moonless",
+                ),
                 "moon_separation_min",
             )
         )

@@ -133,7 +133,8 @@ def test_pairwise_is_the_diagonal(site, stars):
         scale = np.cos(np.radians(pairs.altitude_deg)) * np.cos(np.radians(pairs.declination_deg))
         known = np.isfinite(pairs[name])
         assert np.array_equal(known, np.isfinite(np.diagonal(full[name])))
-        if name != "airmass":
+        # What is said of bodies only is known of no star.
+        if name != "airmass" and known.any():
             assert (gap * scale)[known].max() * 3600e6 < 2.0, name
 
 

@@ -128,7 +128,6 @@ fn columns(
     let mut status = vec![0; rows];
     let mut go = KEEP_GOING;
     let out = PlaceColumns {
-        sky_model: SkyModel::default(),
         columns: wanted.iter().copied().zip(values.iter_mut().map(|values| &mut values[..])).collect(),
         sky_model: SkyModel::default(),
         status: &mut status,
