@@ -48,7 +48,7 @@ def test_every_unit_is_one():
                     "hours",
                     "hours_moonless",
                 ),
-                "moon_separation_min",
+                *("moon_separation_min", "seconds_left", "seconds_to_next"),
             )
         )
 
