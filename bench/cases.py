@@ -286,6 +286,22 @@ def exact_windows(bench):
     )
 
 
+def watch(bench):
+    """The state of all rows at one instant of a night whose windows are known."""
+    watched = ha.Watch(bench.site, bench.catalog, "2026-07-01", ha.Limits(**LIMITS), threads=bench.threads)
+    when = watched.start + np.timedelta64(12 * 3600 + 1234, "s")
+    out = watched.at(when, threads=bench.threads)
+    windows = watched.windows
+    up = np.zeros(bench.rows, bool)
+    up[windows.target[(windows.start <= when) & (when < windows.stop)]] = True
+    assert np.array_equal(out.up, up) and up.any()
+    ours = bench.ours(lambda: watched.at(when, out=out, threads=bench.threads))
+    # The gate is for a million rows.
+    scaled = {isa: seconds * 1e6 / bench.rows for isa, seconds in ours.items()}
+    about = (1, 1, 0.0, scaled, 0.015, 0.005)
+    return Measured("`Watch.at`, a million rows", "its windows", *about, "0", kind="s")
+
+
 def imports(bench):
     """What an import costs beside numpy's, and the command's help."""
 
@@ -318,6 +334,7 @@ CASES = {
     "year": lambda bench: year(bench, moon=False),
     "year-moon": lambda bench: year(bench, moon=True),
     "windows": exact_windows,
+    "watch": watch,
     "imports": imports,
 }
 """Every case by the word that `compare.py --only` takes."""

@@ -138,7 +138,7 @@ def _verdicts(row):
 
 def _cell(row, isa):
     if row.kind == "s":
-        return f"{row.ours_s[isa] * 1e3:.0f} ms"
+        return f"{row.ours_s[isa] * 1e3:.{1 if row.ours_s[isa] < 0.02 else 0}f} ms"
     nanoseconds = row.ours_s[isa] / row.rows * 1e9
     return f"{_times(row.value(isa))} ({nanoseconds:,.{1 if nanoseconds < 100.0 else 0}f} ns)"
 
