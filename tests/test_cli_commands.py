@@ -525,3 +525,51 @@ def test_explain(plan: Path, targets: Path, capsys: pytest.CaptureFixture[str]) 
     assert "that row was rejected: row " in explain("--name", "bad", code=2)[1]
     assert run(["explain", str(plan), "--bodies", "jupiter", "--night", "2026-03-10"]) == 0
     assert capsys.readouterr().out.startswith("jupiter, night of 2026-03-10")
+
+
+# ---- demand ------------------------------------------------------------------------------------------------
+
+
+def test_demand(plan: Path, targets: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    def demand(*arguments: object, code: int = 0) -> tuple[str, str]:
+        given = (plan, targets, "--from", "2026-03-01", "--nights", 10, *arguments)
+        assert run(["demand", *map(str, given)]) == code
+        printed = capsys.readouterr()
+        return printed.out, printed.err
+
+    output = plan.parent / "d.parquet"
+    text, _ = demand("--hours", 2, "-o", output)
+    lines = text.splitlines()
+    assert lines[0].startswith("Saltpan Ridge (") and "10 nights, 2026-03-01 to 2026-03-10" in lines[1]
+    assert "24 rows read = 24 counted + 0 rejected" in lines
+    assert sum(":00–" in line for line in lines) == 24 and "targets ask for more hours than they have" in text
+    bins, each = pq.read_table(output), pq.read_table(plan.parent / "d.targets.parquet")
+    assert bins.num_rows == 24 and each.num_rows == 24 and each["requested_hours"].to_pylist() == [2.0] * 24
+    short = each.filter(pc.field("requested_hours") > pc.field("available_hours"))
+    assert f"\n{short.num_rows} targets ask for more" in text
+    placed = each.filter(pc.field("available_hours") > 0.0)
+    assert pc.sum(bins["demand_hours"]).as_py() == pytest.approx(2.0 * placed.num_rows)
+    # The shade of each bar is what its numbers say.
+    line = next(line for line in lines if line.strip().startswith("10:00–11:00"))
+    supply, asked = (float(cell) for cell in line.split() if "." in cell)
+    assert ("▓" in line) == (asked > 1.1 * supply) or abs(asked - supply) < 3.0
+
+    # From a column, with a row that asks for nothing sensible.
+    rows = [f"{line},{i % 3}" for i, line in enumerate(TARGETS.splitlines()[1:])]
+    targets.write_text("name,ra,dec,t_req\n" + "\n".join(rows) + "\nX,10,20,-1\nY,10,20,\n")
+    _, err = demand("--hours", "t_req", "-q", "-o", output, code=3)
+    assert "outside 0 to 100000 of requested_hours" in err
+    assert "empty, but requested_hours is taken from here" in err
+    assert pq.read_table(plan.parent / "d.targets.parquet")["requested_hours"].to_pylist() == [0, 1, 2] * 8
+    assert b"--hours t_req" in pq.read_metadata(output).metadata[b"hourarc.command"]
+
+    assert "'hours' asks for a column" not in err
+    assert 'asks for a column "t_rek"' in demand("--hours", "t_rek", code=2)[1]
+    assert "given -1, allowed 0 to 100000 h" in demand("--hours", "-1", code=2)[1]
+    assert "bin_h: given 5, allowed a width that divides 24 h" in demand("--hours", 1, "--bin", 5, code=2)[1]
+    assert (
+        "the last night would be" in demand("--hours", 1, "--nights", 3000, "--from", "2099-01-01", code=2)[1]
+    )
+    call = ["demand", str(plan), "--bodies", "mars", "--from", "2026-03-01", "--nights", "2", "--hours"]
+    assert run([*call, "3"]) == 0 and "1 row read" in capsys.readouterr().out
+    assert run([*call, "t_req"]) == 2 and "--bodies has no columns" in capsys.readouterr().err

@@ -43,12 +43,12 @@ def test_every_unit_is_one():
                     "_mag_arcsec2",
                     "_mas",
                     "_au",
-                    "_v",
+                    "_h",
                     "_arcsec_min",
                     "hours",
                     "hours_moonless",
                 ),
-                *("moon_separation_min", "seconds_left", "seconds_to_next"),
+                *("moon_separation_min", "magnitude_v", "seconds_left", "seconds_to_next"),
             )
         )
 

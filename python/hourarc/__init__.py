@@ -17,6 +17,7 @@ from __future__ import annotations
 from . import _engine, earth, errors
 from ._columns import instruction_set
 from .almanac import Almanac, almanac
+from .demand import Demand, demand
 from .earth import Orientation
 from .errors import HourarcError, HourarcWarning
 from .events import Event, Events, rise_transit_set
@@ -46,6 +47,7 @@ __all__ = [
     "Almanac",
     "Bodies",
     "Catalog",
+    "Demand",
     "Event",
     "Events",
     "Explanation",
@@ -68,6 +70,7 @@ __all__ = [
     "__version__",
     "after_gap",
     "almanac",
+    "demand",
     "earth",
     "errors",
     "explain",

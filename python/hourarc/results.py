@@ -114,6 +114,14 @@ COLUMNS: Mapping[str, Column] = {
     "longest_gap": Column("", "meta.number", "most nights in a row between them that are not useful"),
     "night_hours": Column("h", "time.duration", "hours of all targets together"),
     "useful_targets": Column("", "meta.number", "number of targets to which the night is useful"),
+    # supply and demand
+    "lst_start_h": Column("h", "time.start", "local mean sidereal time at which the bin begins"),
+    "lst_stop_h": Column("h", "time.end", "local mean sidereal time at which the bin ends"),
+    "supply_hours": Column("h", "time.duration", "hours in which the limits on the sky alone hold"),
+    "demand_hours": Column("h", "time.duration", "requested hours"),
+    "requested_hours": Column("h", "time.duration", "hours that the target asks for"),
+    "available_hours": Column("h", "time.duration", "hours in which all limits hold for the target"),
+    "ratio": Column("", "meta.number;arith.ratio", "demand by supply"),
     # slots and gaps
     "window": Column("", "meta.record", "row of the window, from 0"),
     "by_gap": Column("", "meta.code", "whether the gap after the last visit sets the start"),

@@ -99,6 +99,7 @@ def read_list(
     quiet: bool,
     with_limits: bool = False,
     with_time: bool = False,
+    other_columns: dict[str, str] | None = None,
 ) -> Targets:
     """The targets, with what is to be said about them on standard error."""
     from ..io.problems import WrongInput
@@ -106,6 +107,11 @@ def read_list(
 
     of_limits = plan.limit_columns if with_limits else {}
     if targets is None:
+        if other_columns:
+            key, column = next(iter(other_columns.items()))
+            raise WrongInput(
+                f"{key} is taken from the column {column!r}, and --bodies has no columns; give a number"
+            )
         if of_limits:
             key = next(iter(of_limits))
             raise WrongInput(
@@ -114,7 +120,11 @@ def read_list(
             )
         return named_bodies(bodies or ())
     read = read_targets(
-        targets, plan.columns, layout=plan.layout, limit_columns=of_limits, with_time=with_time
+        targets,
+        plan.columns,
+        layout=plan.layout,
+        limit_columns={**of_limits, **(other_columns or {})},
+        with_time=with_time,
     )
     for warning in read.warnings:
         print(f"hourarc: warning: {targets}: {warning}", file=sys.stderr)

@@ -89,6 +89,20 @@ def windows_table(windows: Any, targets: Targets, first: int = 0) -> pa.Table:
     return _table(columns)
 
 
+def requests_table(demand: Any, targets: Targets) -> pa.Table:
+    """A row a target: what it asks for, and what it has."""
+    import pyarrow as pa
+
+    return _table(
+        {
+            "row": pa.array(targets.row),
+            "name": targets.name,
+            "requested_hours": pa.array(demand.requested_hours),
+            "available_hours": pa.array(demand.available_hours),
+        }
+    )
+
+
 def explanation_table(explanation: Any, targets: Targets, index: int) -> pa.Table:
     """A row an interval in which a limit holds, alone or with those above it."""
     import pyarrow as pa

@@ -32,6 +32,10 @@ _SAID = {
 }
 
 
+#: What else than a limit a column may hold for each target, and its range.
+_OTHER = {"requested_hours": (0.0, 1e5)}
+
+
 @dataclass(frozen=True)
 class TargetLayout:
     """The plan's `[targets]`: how the file is laid out, where the suffix does not say so."""
@@ -150,7 +154,7 @@ def read_targets(
     table = open_table(path, layout.layout, header=layout.header, table=layout.table)
     found = find_columns(table.names, table.units, columns or {}, str(path), with_time=with_time)
     of_limits = {
-        key: locate(column, table.names, f"[limits] {key}", str(path))
+        key: locate(column, table.names, key if key in _OTHER else f"[limits] {key}", str(path))
         for key, column in (limit_columns or {}).items()
     }
     content = table.read(
@@ -327,11 +331,12 @@ def _limit(
 ) -> np.ndarray:
     values, null, text = numbers(raw, column, missing, path)
     faults.add(text, column, raw, "not a number")
-    faults.add(null, column, raw, "empty, but a limit is taken from here")
+    what = key if key in _OTHER else "a limit"
+    faults.add(null, column, raw, f"empty, but {what} is taken from here")
     faults.add(~np.isfinite(values), column, raw, "not a finite number")
-    declared = LIMITS[key]
-    outside = (values < declared.low) | (values > declared.high)
-    faults.add(outside, column, raw, f"outside {declared.low:g} to {declared.high:g} of {key}")
+    low, high = _OTHER.get(key) or (LIMITS[key].low, LIMITS[key].high)
+    outside = (values < low) | (values > high)
+    faults.add(outside, column, raw, f"outside {low:g} to {high:g} of {key}")
     return values
 
 
