@@ -54,8 +54,8 @@ class Limits:
     of Sun and Moon are topocentric ones of the centre, without refraction, as twilights are defined.
     ``sun_altitude_max_deg`` also takes the words civil, nautical and astronomical.
 
-    ``altitude_min_deg=None`` needs an ``airmass_max``: something must keep the target above the ground.
-    Both hold when both are given, and the altitude's default counts as given.
+    An ``airmass_max`` alone takes the place of the altitude's default; both hold when both are given.
+    ``altitude_min_deg=None`` needs one: something must keep the target above the ground.
 
     A value of a per-target column that is NaN, out of range or in contradiction with another limit makes
     that target a bad row; the others are untouched.
@@ -70,6 +70,8 @@ class Limits:
             if key not in LIMITS:
                 raise UnknownName.among("Limits: keyword", key, LIMITS)
         values = {key: _value(limit, limits.get(key, limit.default)) for key, limit in LIMITS.items()}
+        if values["airmass_max"] is not None and "altitude_min_deg" not in limits:
+            values["altitude_min_deg"] = None
         _check_together(values)
         object.__setattr__(self, "_values", MappingProxyType(values))
         _warn_of_the_sun(values["sun_separation_min_deg"])
