@@ -55,7 +55,7 @@ def command(
     """Compare what the targets of TARGETS ask for with what the sky of a season has, under the limits of
     PLAN.toml, by local mean sidereal time.
 
-    The supply of a bin are its hours in which the limits on Sun and Moon hold; the hours of a target are
+    The supply of a bin is the hours in it in which the limits on Sun and Moon hold; the hours of a target are
     spread over the bins as its own observable hours are. Beside FILE stands FILE.targets, each target with
     what it asks for and what it has.
     """
