@@ -16,7 +16,8 @@ use crate::math::vector::{Vector, dot, unit};
 pub fn aberrated(natural: Vector, velocity_c: Vector, inverse_gamma: f64, sun_distance_au: f64) -> Vector {
     let along = dot(natural, velocity_c);
     let potential = SUN_SCHWARZSCHILD_RADIUS_AU / sun_distance_au;
-    let of_velocity = 1.0 + along / (1.0 + inverse_gamma) + potential;
+    // The reciprocal is the same for all stars of a sky: a loop over them divides once.
+    let of_velocity = 1.0 + along * (1.0 / (1.0 + inverse_gamma)) + potential;
     let of_natural = inverse_gamma - potential * along;
     unit([
         of_natural * natural[0] + of_velocity * velocity_c[0],
