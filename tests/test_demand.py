@@ -45,7 +45,8 @@ def test_supply_and_demand_against_sampling():
     shares = np.divide(hours, own, out=np.zeros_like(hours), where=own > 0.0)
     np.testing.assert_allclose(made.demand_hours, ASKED @ shares, atol=0.02)
     # The sky alone: a star that no other limit touches, at the height of the pole of a far southern site.
-    dark = ha.Limits(altitude_min_deg=-5.0, sun_altitude_max_deg=-15.0, sun_separation_min_deg=0.0)
+    with pytest.warns(ha.errors.SunLimitWarning):
+        dark = ha.Limits(altitude_min_deg=-5.0, sun_altitude_max_deg=-15.0, sun_separation_min_deg=0.0)
     south = ha.Catalog(0.0, -89.9)
     np.testing.assert_allclose(
         made.supply_hours, sampled(ha.windows(SITE, south, *span, dark), 12)[0], atol=20 * 30 / 3600

@@ -297,6 +297,15 @@ def test_hours_left_by_hand():
     assert BY_HAND.hours_left("2026-07-06")[1] == 0.0
 
 
+def test_nights_left_by_hand():
+    whole = BY_HAND.summary()
+    assert BY_HAND.nights_left("2020-01-01").tolist() == whole.useful_nights.tolist()
+    late = BY_HAND.hours[np.searchsorted(BY_HAND.night, np.datetime64("2026-07-04")) :]
+    assert BY_HAND.nights_left("2026-07-04").tolist() == np.sum(late > 0.0, axis=0).tolist()
+    assert BY_HAND.nights_left("2020-01-01", useful_hours=1.0).tolist() == [0, 0, 2, 2, 0, 0]
+    assert not BY_HAND.nights_left("2030-01-01").any()
+
+
 def test_a_tally_in_pieces_is_the_summary_of_the_whole():
     made = grid(nights=40)
     tally = SeasonTally(300)

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from pathlib import Path
 
 import hourarc
@@ -76,6 +77,23 @@ def test_limits_that_are_lists(tmp_path: Path) -> None:
         ["2026-03-10T23:00:00.000000000", "2026-03-11T03:30:00.000000000"],
         ["2026-03-11T04:00:00.000000000", "2026-03-12T00:00:00.000000000"],
     ]
+
+
+def test_the_examples_in_the_demo_plan_are_right(tmp_path: Path) -> None:
+    from hourarc.demo import write_demo
+
+    path, _, _ = write_demo(tmp_path)
+    before, comment, rest = path.read_text().partition("# The skyline above is a limit too")
+    examples, heading, after = rest.partition("[columns]")
+    said = re.sub(r"^# (?=[a-z_0-9]+ = )", "", examples, flags=re.MULTILINE)
+    assert said.count("\n# ") == 0 and heading
+    path.write_text(before + comment + said + heading + after)
+    read = read_plan(path)
+    assert set(read.limit_columns) == {"moon_separation_min_deg", "phase_epoch_jd", "phase_period_d"}
+    assert {"hour_angle_min_h", "allowed_intervals", "phase_half_width_d"} <= set(read.limit_keywords)
+    for key in read.limit_columns:
+        read.limit_keywords[key] = {"phase_epoch_jd": 2455197.5, "phase_period_d": 3.0}.get(key, 30.0)
+    read.limits()
 
 
 def test_a_skyline_of_a_file(tmp_path: Path) -> None:

@@ -9,7 +9,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from . import _engine
-from ._columns import Floats, workers, writable
+from ._columns import Floats, scalar, workers, writable
 from .errors import InvalidArgument, MissingColumn, UnknownName, WrongType
 from .limits import Limits
 from .orbits import Orbits
@@ -148,6 +148,17 @@ class Grid(ColumnResult):
         date = np.datetime64(day_number(night, "Grid: hours_left: night") - _UNIX_EPOCH_MJD, "D")
         left: Floats = self.hours[np.searchsorted(self.night, date) :].sum(axis=0, dtype=np.float64)
         return left
+
+    def nights_left(self, night: Any, *, useful_hours: float = 0.0) -> NDArray[np.int64]:
+        """How many useful nights each target has from the night of that date to the end, shape (targets,).
+
+        ``useful_hours``: a night is useful to a target that has more hours than that. Needs ``hours``. A bad
+        row has none.
+        """
+        date = np.datetime64(day_number(night, "Grid: nights_left: night") - _UNIX_EPOCH_MJD, "D")
+        least = scalar(useful_hours, "Grid: nights_left: useful_hours", "h")
+        left = self.hours[np.searchsorted(self.night, date) :] > least
+        return np.asarray(np.count_nonzero(left, axis=0), dtype=np.int64)
 
     @property
     def night_hours(self) -> Floats:
