@@ -12,11 +12,14 @@ from __future__ import annotations
 
 import argparse
 
+import movers
 import table
-from cases import CASES, Bench, Measured, flatness
+from cases import CASES as OF_STARS
+from cases import Bench, Measured, flatness
 from hourarc import _engine
 
 FULL = 1_000_000
+CASES = OF_STARS | movers.CASES
 
 
 def main():

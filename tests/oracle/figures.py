@@ -67,6 +67,20 @@ GATES = {
         4_000,
     ),
     "bodies_planets": Gate("the same, Mercury to Neptune", "the same", 5.0, "mas", 14_000),
+    "kernel_states": Gate(
+        "states of ten bodies from a kernel, 1585–2351, relative to their length",
+        "jplephem reading the same DE440",
+        1e-13,
+        "",
+        200_000,
+    ),
+    "kernel_astropy": Gate(
+        "topocentric places of Moon and planets from a kernel, beyond 3° from the Sun",
+        "astropy with the same DE440",
+        5.0,
+        "mas",
+        100,
+    ),
     "star_events": Gate(
         "rise, transit and set of stars, where the altitude changes faster than 3″/s",
         "brute-force root on pyerfa",

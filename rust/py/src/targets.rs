@@ -1,7 +1,7 @@
 //! Targets: a catalogue, bodies of the solar system, or orbits.
 
 use hourarc_core::astrometry::{self, CatalogColumns};
-use hourarc_core::ephemeris::{Body, Ephemeris};
+use hourarc_core::ephemeris::{Body, Ephemeris, State};
 use numpy::PyArray1;
 use pyo3::prelude::*;
 use std::path::PathBuf;
@@ -101,8 +101,10 @@ impl Bodies {
             for (&day, &fraction) in days.iter().zip(fractions) {
                 for &body in &self.bodies {
                     match self.ephemeris.state_at(body, day, fraction) {
-                        Ok(state) => numbers.extend([state.position, state.velocity].concat()),
-                        Err(_) => numbers.extend([f64::NAN; 6]),
+                        Ok(State { position: [x, y, z], velocity: [vx, vy, vz] }) => {
+                            numbers.extend_from_slice(&[x, y, z, vx, vy, vz]);
+                        }
+                        Err(_) => numbers.extend_from_slice(&[f64::NAN; 6]),
                     }
                 }
             }
