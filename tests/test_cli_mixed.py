@@ -150,6 +150,27 @@ def test_the_kind_may_be_said(folder: Path, capsys: pytest.CaptureFixture[str]) 
     assert "none of the 4 lines is an orbit" in printed
 
 
+def test_a_kernel_for_bodies(folder: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    plan, kernel = folder / "plan.toml", folder / "excerpt.bsp"
+    kernel.write_bytes((Path(__file__).parent / "data" / "de440-excerpt.bsp").read_bytes())
+    plan.write_text(PLAN + '[targets]\nephemeris = "excerpt.bsp"\n')
+    call = ("sky", plan, "--bodies", "mars,moon", "-o", folder / "sky.csv", "--at")
+    printed = said(capsys, 0, *call, "2025-11-10T09:00")
+    # The report has magnitudes where bodies are among the highest.
+    assert " V\n" in printed
+    assert "excerpt.bsp" in (folder / "sky.csv").read_text()
+    bodies = hourarc.Bodies(["mars", "moon"], ephemeris=kernel)
+    places = hourarc.place(SITE, bodies, "2025-11-10T09:00")
+    found = [float(row["altitude_deg"]) for row in csv_rows(folder / "sky.csv")]
+    assert found == pytest.approx(places.altitude_deg, abs=1e-9)
+    # Outside its span no body has a place.
+    assert "outside the span of" in said(capsys, 3, *call, "2024-11-10T09:00")
+    plan.write_text(PLAN + '[targets]\nephemeris = "none.bsp"\n')
+    assert "none.bsp" in said(capsys, 1, *call, "2025-11-10T09:00")
+    plan.write_text(PLAN + "[targets]\nephemeris = 440\n")
+    assert "a path is needed" in said(capsys, 2, *call, "2025-11-10T09:00")
+
+
 def test_what_orbits_do_not_have(folder: Path, capsys: pytest.CaptureFixture[str]) -> None:
     plan, orbits = folder / "plan.toml", folder / "orbits.txt"
     exposures = ("annotate", plan, orbits, "-o", folder / "out.csv")

@@ -118,7 +118,7 @@ def read_list(
                 f"{plan.where('limits', key)}: {key} is taken from a column, and --bodies has no columns; "
                 "give one value"
             )
-        return named_bodies(bodies or ())
+        return named_bodies(bodies or (), plan.ephemeris)
     read = read_targets(
         targets,
         plan.columns,

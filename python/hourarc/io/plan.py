@@ -11,7 +11,8 @@ is laid out.
                  false), table (the name or number of the table in a FITS or VOTable file), missing (texts
                  for "not known"), kind ("table" or "mpc_orbits", the Minor Planet Center's lines; without it
                  each file is taken for what it looks like), bodies (names such as "moon": targets beside
-                 those of the files)
+                 those of the files), ephemeris (an SPK file for bodies, its path counted from the plan's
+                 folder)
 
 Only `[site]` is needed. An unknown key is an error that names its line and the nearest known key.
 """
@@ -54,6 +55,8 @@ class Plan:
     layout: TargetLayout = field(default_factory=TargetLayout)
     #: Bodies of the solar system that are targets beside those of the files.
     bodies: tuple[str, ...] = ()
+    #: The SPK file for bodies, or None for the built-in ephemeris.
+    ephemeris: Path | None = None
     _text: str = ""
 
     def site(self) -> Any:
@@ -179,6 +182,12 @@ def read_plan(path: str | Path) -> Plan:
     }
     plan.layout = _layout(plan, data.get("targets", {}))
     plan.bodies = _bodies(plan, data.get("targets", {}))
+    if (kernel := data.get("targets", {}).get("ephemeris")) is not None:
+        if not isinstance(kernel, str):
+            raise WrongInput(
+                f"{plan.where('targets', 'ephemeris')}: ephemeris is given {kernel!r}; a path is needed"
+            )
+        plan.ephemeris = path.parent / kernel
     return plan
 
 
@@ -245,7 +254,9 @@ def _site_value(plan: Plan, key: str, value: Any) -> Any:
 
 
 def _layout(plan: Plan, content: dict[str, Any]) -> TargetLayout:
-    _check_keys(plan, "targets", content, ("layout", "kind", "header", "table", "missing", "bodies"))
+    _check_keys(
+        plan, "targets", content, ("layout", "kind", "header", "table", "missing", "bodies", "ephemeris")
+    )
     layouts = tuple(dict.fromkeys(LAYOUTS.values()))
 
     def wrong(key: str, needed: str) -> WrongInput:

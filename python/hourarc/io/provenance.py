@@ -55,6 +55,8 @@ def provenance(
 
 def _list_record(targets: Targets, done: str) -> dict[str, Any]:
     origin: dict[str, Any] = {"bodies": list(targets.bodies)}
+    if targets.ephemeris is not None:
+        origin["ephemeris"] = str(targets.ephemeris)
     if targets.path is not None:
         origin = {"file": targets.path.name, "sha256": targets.sha256}
     return origin | {

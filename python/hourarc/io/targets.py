@@ -72,6 +72,8 @@ class Targets:
     time: np.ndarray | None = None
     #: The names of bodies, where they are the targets: row i is the i-th of them, and there are no columns.
     bodies: tuple[str, ...] = ()
+    #: The SPK file that the bodies are from, or None for the built-in ephemeris.
+    ephemeris: Path | None = None
     #: The `hourarc.Orbits` of the planned rows, where orbits are the targets: there are no columns either.
     orbits: Any = None
 
@@ -90,7 +92,7 @@ class Targets:
         if self.orbits is not None:
             return self.orbits if (start, stop) == (0, None) else self.orbits[start:stop]
         if self.bodies:
-            return hourarc.Bodies([self.bodies[row - 1] for row in self.row[start:stop]])
+            return hourarc.Bodies([self.bodies[row - 1] for row in self.row[start:stop]], self.ephemeris)
         part = {key: values[start:stop] for key, values in self.columns.items()}
         return hourarc.Catalog(
             part["ra"],
@@ -109,6 +111,8 @@ class Targets:
         for i in np.flatnonzero(bad):
             value = "" if self.time is None else str(self.time[i])
             said = _SAID.get(str(reason[i]), str(reason[i]))
+            if self.ephemeris is not None and reason[i] == "outside_ephemeris":
+                said = f"outside the span of {self.ephemeris}"
             self.rejected.add(self.row[i], self.name[int(i)].as_py(), "", value, said)
         self.rejected.sort()
         keep = ~bad
@@ -232,15 +236,20 @@ def _orbits(path: Path, limit_columns: Mapping[str, str | int], with_time: bool)
     return read_orbits(path)
 
 
-def named_bodies(names: Sequence[str]) -> Targets:
-    """Bodies of the solar system as targets; names that are not known raise `hourarc.errors.UnknownName`."""
+def named_bodies(names: Sequence[str], ephemeris: Path | None = None) -> Targets:
+    """Bodies of the solar system as targets; names that are not known raise `hourarc.errors.UnknownName`.
+
+    `ephemeris`: an SPK file, or None for the built-in one.
+    """
     import pyarrow as pa
 
     import hourarc
 
-    bodies = tuple(map(str, hourarc.Bodies(names).name))
+    bodies = tuple(map(str, hourarc.Bodies(names, ephemeris).name))
     row = np.arange(1, len(bodies) + 1)
-    return Targets(None, "", len(bodies), row, pa.array(bodies), {}, {}, Rejected(), bodies=bodies)
+    targets = Targets(None, "", len(bodies), row, pa.array(bodies), {}, {}, Rejected(), bodies=bodies)
+    targets.ephemeris = ephemeris
+    return targets
 
 
 class _Faults:

@@ -64,4 +64,8 @@ def _highest(places: pa.Table, altitude: np.ndarray) -> list[str]:
                 f"{one['sun_separation_deg']:.1f}°",
             ]
         )
-    return ["", "Highest:", *aligned(rows, [False] + [True] * 6, indent="    ")]
+    magnitude = places["magnitude_v"].to_numpy()[order]
+    if np.isfinite(magnitude).any():
+        shown = [f"{value:.1f}" if np.isfinite(value) else "" for value in magnitude]
+        rows = [[*row, cell] for row, cell in zip(rows, ["V", *shown], strict=True)]
+    return ["", "Highest:", *aligned(rows, [False] + [True] * (len(rows[0]) - 1), indent="    ")]
