@@ -306,7 +306,7 @@ pub fn node_fraction<const N: usize>(j: usize) -> f64 {
 ///
 /// The sine of the altitude is c + a cos ωτ + b sin ωτ about the middle of the part; its greatest value in
 /// −T to T needs no trigonometry. What the place leaves out (aberration, parallax, the change of
-/// precession in a day) is below [`SCREEN_MARGIN`].
+/// precession in a day) is below `SCREEN_MARGIN`.
 #[derive(Debug, Clone, Copy)]
 pub struct Screen {
     /// Zenith at the middle, the point it moves towards, and the pole, each times what the site's latitude

@@ -29,7 +29,7 @@ pub enum Shape {
 
 /// Computes places: `when` × `targets` in rows of targets, or row by row.
 ///
-/// Accuracy: directions as [`star_direction`] and [`body_direction`]; the track adds less than 0.5 µas,
+/// Accuracy: directions as in [`astrometry::chain`](crate::astrometry::chain); the track adds less than 0.5 µas,
 /// the loops' own arctangents less than 0.1 µas. An instant or a row that is not good gives NaN and its
 /// status, and touches no other.
 ///
