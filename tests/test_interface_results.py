@@ -1,5 +1,7 @@
 """Results as tables: units, UCDs, words, missing values."""
 
+import warnings
+
 import hourarc as ha
 import numpy as np
 import pytest
@@ -116,6 +118,30 @@ def test_astropy_times_are_the_same_instants():
     almanac = results()["almanac"]
     masked = almanac.to_table()["sunset"]
     assert np.array_equal(np.broadcast_to(masked.mask, 5), np.isnat(almanac.sunset))
+
+
+def test_astropy_times_are_those_astropy_makes():
+    Time = pytest.importorskip("astropy.time").Time
+    from erfa import ErfaWarning
+    from hourarc import interop
+
+    rng = np.random.default_rng(6)
+    instants = rng.integers(-315 * 10**15, 2500 * 10**15, 3000).view("M8[ns]")
+    edges = [
+        "2016-12-31T23:59:59.999999999",
+        "2016-12-31",
+        "2017-01-01",
+        "1961-08-01T00:00:00.1",
+        "1969-12-31T23:59",
+    ]
+    instants = np.concatenate([instants, np.array(edges, "M8[ns]")])
+    made = interop._utc(instants)
+    with warnings.catch_warnings():
+        warnings.simplefilter("ignore", ErfaWarning)
+        expected = Time(instants, format="datetime64", scale="utc")
+        assert np.array_equal(made.value, expected.value)
+    assert np.array_equal(made.jd1, expected.jd1) and np.array_equal(made.jd2, expected.jd2)
+    assert made.format == "datetime64"
 
 
 def test_a_missing_package_is_named(monkeypatch):
