@@ -54,7 +54,8 @@ pub struct BatchSpace {
     set_aside: Column,
     candidates: Candidates,
     found: Vec<(u16, Event)>,
-    sorted: Vec<Event>,
+    /// Places in `found`, star by star.
+    order: Vec<u32>,
 }
 
 /// Events looked for in one day: a row each.
@@ -102,7 +103,7 @@ impl Default for BatchSpace {
                 doubtful: row,
             },
             found: Vec::new(),
-            sorted: Vec::new(),
+            order: Vec::new(),
         }
     }
 }
@@ -151,7 +152,9 @@ pub fn star_events(
         space.gather(count, within);
         let angle_error = STAR_ARC_ERROR_RAD + arc.pole_error;
         isa.run(Solve { arc, sin_threshold: topocentric.sin(), candidates: &mut space.candidates });
-        isa.run(Describe { arc, refraction, angle_error, scatter, candidates: &mut space.candidates });
+        let sin_threshold = topocentric.sin();
+        let candidates = &mut space.candidates;
+        isa.run(Describe { arc, sin_threshold, refraction, angle_error, scatter, candidates });
         space.collect(arc, (days.start, days.stop));
     }
     space.deliver(days, catalog, rows, threshold, &passages, events, summaries);
@@ -304,20 +307,20 @@ impl BatchSpace {
             next[star + 1] += next[star];
         }
         let bounds = next;
-        let blank = self.found.first().map(|found| found.1);
-        self.sorted.clear();
-        self.sorted.extend(blank.into_iter().cycle().take(self.found.len()));
-        for (star, event) in &self.found {
+        self.order.clear();
+        self.order.resize(self.found.len(), 0);
+        for (place, (star, _)) in (0..).zip(&self.found) {
             let slot = &mut next[usize::from(*star)];
-            self.sorted[*slot] = *event;
+            self.order[*slot] = place;
             *slot += 1;
         }
         let targets = Targets::Catalog(catalog);
         let note = days.note();
         for (star, row) in rows.enumerate() {
-            let own = &mut self.sorted[bounds[star]..bounds[star + 1]];
+            let own = &self.order[bounds[star]..bounds[star + 1]];
+            let own = own.iter().map(|&place| &self.found[place as usize].1);
             let before = events.len();
-            let crosses = own.iter().any(|event| event.kind != EventKind::Transit);
+            let crosses = own.clone().any(|event| event.kind != EventKind::Transit);
             let status = catalog.status()[row];
             // A star that crosses the threshold, but not in this span, may be above or below.
             let unknown = passages[star] == Passage::Crosses && !crosses;
@@ -326,8 +329,8 @@ impl BatchSpace {
             } else if self.set_aside[star] != 0.0 || unknown {
                 rise_transit_set(days, &targets, row, threshold, events)
             } else {
-                own.sort_by_key(|event| event.time.nanoseconds());
-                events.extend_from_slice(own);
+                events.extend(own);
+                events[before..].sort_by_key(|event| event.time.nanoseconds());
                 (if crosses { Passage::Crosses } else { passages[star] }, status.worst(note))
             };
             summaries.push((events.len() - before, summary));
@@ -425,7 +428,7 @@ impl Turning {
 /// Coefficients of a star's direction over a day: three constant ones, three linear, three quadratic.
 type Path = [f64; 9];
 
-/// Two steps of Newton's method.
+/// A first step of Newton's method.
 struct Solve<'a, 'b> {
     arc: &'a Arc<'b>,
     sin_threshold: f64,
@@ -438,26 +441,24 @@ impl Kernel for Solve<'_, '_> {
     #[inline(always)]
     fn run<A: Arithmetic>(self) {
         let turning = Turning::of(self.arc);
-        let Candidates { count, direction, transit, at, step, .. } = self.candidates;
+        let Candidates { count, direction, transit, at, .. } = self.candidates;
         let count = (*count).min(MOST);
-        let (transit, at, step) = (&transit[..count], &mut at[..count], &mut step[..count]);
+        let (transit, at) = (&transit[..count], &mut at[..count]);
         for i in 0..count {
-            let path = path_of(direction, i);
-            let mut fraction = at[i];
-            let mut last = 0.0;
-            for _ in 0..2 {
-                let (local, rate) = turning.local_and_rate::<A>(&path, fraction);
-                // East for a transit, altitude for a crossing.
-                let crossing = 1.0 - transit[i];
-                let value = A::multiply_add(transit[i], local[1], crossing * (local[2] - self.sin_threshold));
-                let slope = A::multiply_add(transit[i], rate[1], crossing * rate[2]);
-                last = value / slope;
-                fraction -= last;
-            }
-            at[i] = fraction;
-            step[i] = last;
+            let (local, rate) = turning.local_and_rate::<A>(&path_of(direction, i), at[i]);
+            at[i] -= newton_step::<A>(local, rate, transit[i], self.sin_threshold);
         }
     }
+}
+
+/// Days back to where the component towards the east vanishes, for a transit, or the altitude is that of
+/// the threshold.
+#[inline(always)]
+fn newton_step<A: Arithmetic>(local: [f64; 3], rate: [f64; 3], transit: f64, sin_threshold: f64) -> f64 {
+    let crossing = 1.0 - transit;
+    let value = A::multiply_add(transit, local[1], crossing * (local[2] - sin_threshold));
+    let slope = A::multiply_add(transit, rate[1], crossing * rate[2]);
+    value / slope
 }
 
 #[inline(always)]
@@ -466,9 +467,11 @@ fn path_of(direction: &[[f64; MOST]; 9], i: usize) -> Path {
     [a[i], b[i], c[i], d[i], e[i], f[i], g[i], h[i], k[i]]
 }
 
-/// Azimuth, observed altitude and errors of the events.
+/// The second step, and azimuth, observed altitude and errors of the events. The direction goes along with the
+/// step in a straight line, which is short by its square: below 1e-12 where the step passes for settled.
 struct Describe<'a, 'b> {
     arc: &'a Arc<'b>,
+    sin_threshold: f64,
     refraction: &'a Refraction,
     angle_error: f64,
     /// Standard deviation of refraction at the threshold, radians.
@@ -483,10 +486,20 @@ impl Kernel for Describe<'_, '_> {
     fn run<A: Arithmetic>(self) {
         let turning = Turning::of(self.arc);
         let Candidates {
-            count, direction, transit, at, azimuth, altitude, error_s, scatter_s, doubtful, ..
+            count,
+            direction,
+            transit,
+            at,
+            step,
+            azimuth,
+            altitude,
+            error_s,
+            scatter_s,
+            doubtful,
+            ..
         } = self.candidates;
         let count = (*count).min(MOST);
-        let (transit, at) = (&transit[..count], &at[..count]);
+        let (transit, at, step) = (&transit[..count], &mut at[..count], &mut step[..count]);
         let (azimuth, altitude) = (&mut azimuth[..count], &mut altitude[..count]);
         let (error_s, scatter_s, doubtful) =
             (&mut error_s[..count], &mut scatter_s[..count], &mut doubtful[..count]);
@@ -494,7 +507,15 @@ impl Kernel for Describe<'_, '_> {
         let turn = EARTH_ROTATION_RAD_PER_S * SECONDS_PER_DAY;
         let always = self.arc.ut1_error_s + ROUNDING_S;
         for i in 0..count {
-            let (local, rate) = turning.local_and_rate::<A>(&path_of(direction, i), at[i]);
+            let (before, rate) = turning.local_and_rate::<A>(&path_of(direction, i), at[i]);
+            let back = newton_step::<A>(before, rate, transit[i], self.sin_threshold);
+            step[i] = back;
+            at[i] -= back;
+            let local = [
+                A::multiply_add(-back, rate[0], before[0]),
+                A::multiply_add(-back, rate[1], before[1]),
+                A::multiply_add(-back, rate[2], before[2]),
+            ];
             let cos_altitude = A::multiply_add(local[0], local[0], local[1] * local[1]).sqrt();
             azimuth[i] = wrap_positive::<A>(atan2::<A>(local[1], local[0]));
             altitude[i] = atan2::<A>(local[2], cos_altitude);
