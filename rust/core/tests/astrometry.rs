@@ -1,6 +1,9 @@
 //! The chain against a published example, the interpolated sky against the exact one, and a star's day
 //! against the chain.
 
+mod common;
+
+use common::Random;
 use hourarc_core::astrometry::{Catalog, CatalogColumns, Observer, Sky, Star, Track, star_direction};
 use hourarc_core::constants::{RADIANS_PER_DEGREE, RADIANS_PER_MICROARCSECOND, RADIANS_PER_MILLIARCSECOND};
 use hourarc_core::earth::{Orientation, s_prime};
@@ -11,19 +14,6 @@ use hourarc_core::math::vector::{angle, from_angles, rotate};
 use hourarc_core::refraction::Refraction;
 use hourarc_core::site::Site;
 use hourarc_core::time::{Instant, LeapSeconds, Tai, Utc};
-
-struct Random(u64);
-
-impl Random {
-    fn unit(&mut self) -> f64 {
-        self.0 = self.0.wrapping_mul(6364136223846793005).wrapping_add(1442695040888963407);
-        (self.0 >> 11) as f64 / (1u64 << 53) as f64
-    }
-
-    fn between(&mut self, low: f64, high: f64) -> f64 {
-        low + (high - low) * self.unit()
-    }
-}
 
 struct Setting {
     site: Site,

@@ -1,5 +1,8 @@
 //! Events of many stars at once against those of each by itself.
 
+mod common;
+
+use common::Random;
 use hourarc_core::astrometry::{Catalog, CatalogColumns, Observer, Targets};
 use hourarc_core::constants::RADIANS_PER_DEGREE;
 use hourarc_core::earth::Orientation;
@@ -10,19 +13,6 @@ use hourarc_core::math::dispatch::Isa;
 use hourarc_core::refraction::{Atmosphere, Refraction};
 use hourarc_core::site::Site;
 use hourarc_core::time::{LeapSeconds, Utc};
-
-struct Random(u64);
-
-impl Random {
-    fn unit(&mut self) -> f64 {
-        self.0 = self.0.wrapping_mul(6364136223846793005).wrapping_add(1442695040888963407);
-        (self.0 >> 11) as f64 / (1u64 << 53) as f64
-    }
-
-    fn between(&mut self, low: f64, high: f64) -> f64 {
-        low + (high - low) * self.unit()
-    }
-}
 
 /// Stars over the sky, many near grazing declinations and the poles, a few bad rows.
 fn catalog(random: &mut Random, rows: usize, latitude_deg: f64, threshold_deg: f64) -> Catalog {

@@ -1,5 +1,8 @@
 //! The grid against the sum of the exact windows, night by night.
 
+mod common;
+
+use common::Random;
 use hourarc_core::astrometry::{Catalog, CatalogColumns, Observer, Targets};
 use hourarc_core::constants::RADIANS_PER_DEGREE;
 use hourarc_core::earth::Orientation;
@@ -11,19 +14,6 @@ use hourarc_core::refraction::{AirmassModel, Atmosphere, Refraction};
 use hourarc_core::site::Site;
 use hourarc_core::time::LeapSeconds;
 use hourarc_core::windows::{Column, Limits};
-
-struct Random(u64);
-
-impl Random {
-    fn unit(&mut self) -> f64 {
-        self.0 = self.0.wrapping_mul(6364136223846793005).wrapping_add(1442695040888963407);
-        (self.0 >> 11) as f64 / (1u64 << 53) as f64
-    }
-
-    fn between(&mut self, low: f64, high: f64) -> f64 {
-        low + (high - low) * self.unit()
-    }
-}
 
 const QUANTITIES: [GridQuantity; 7] = GridQuantity::ALL;
 

@@ -1,6 +1,9 @@
 //! Orbits as targets of every verb: against JPL's asteroids, against the exact chain by brute force, and where
 //! planners break: a passage at 0.01 au, a target across the pole, one that moves 30° in a night.
 
+mod common;
+
+use common::Random;
 use hourarc_core::astrometry::{Moving, Observer, Sky, Targets, appearance, orbit_direction};
 use hourarc_core::constants::{LIGHT_TIME_AU_S, RADIANS_PER_ARCSECOND, RADIANS_PER_DEGREE, TURN};
 use hourarc_core::earth::Orientation;
@@ -58,23 +61,11 @@ fn mjd(day: f64) -> Utc {
     Utc::from_mjd(day.floor(), day - day.floor())
 }
 
-struct Random(u64);
-
-impl Random {
-    fn unit(&mut self) -> f64 {
-        self.0 = self.0.wrapping_mul(6364136223846793005).wrapping_add(1442695040888963407);
-        (self.0 >> 11) as f64 / (1u64 << 53) as f64
-    }
-
-    fn between(&mut self, low: f64, high: f64) -> f64 {
-        low + (high - low) * self.unit()
-    }
-
-    fn direction(&mut self) -> Vector {
-        let (z, longitude) = (self.between(-1.0, 1.0), self.between(0.0, TURN));
-        let across = (1.0 - z * z).sqrt();
-        [across * longitude.cos(), across * longitude.sin(), z]
-    }
+/// Uniform over the sphere.
+fn random_direction(random: &mut Random) -> Vector {
+    let (z, longitude) = (random.between(-1.0, 1.0), random.between(0.0, TURN));
+    let across = (1.0 - z * z).sqrt();
+    [across * longitude.cos(), across * longitude.sin(), z]
 }
 
 fn push(orbits: &mut Orbits, heliocentric: State, epoch: Instant<Tdb>) {
@@ -329,10 +320,10 @@ fn near_bodies_break_no_solver() {
         let away = match number % 3 {
             // Over the pole at the closest approach, at 30° a night and more.
             0 => [1e-4, 0.0, 1.0],
-            _ => random.direction(),
+            _ => random_direction(&mut random),
         };
         let speed_au_d = random.between(5.0, 25.0) * 86_400.0 / 149_597_870.7;
-        let velocity = scale(speed_au_d, unit(cross(away, random.direction())));
+        let velocity = scale(speed_au_d, unit(cross(away, random_direction(&mut random))));
         let mut orbits = Orbits::new();
         push(
             &mut orbits,
@@ -379,9 +370,9 @@ fn near_bodies_have_their_windows() {
         let setting = Setting::new(random.between(-180.0, 180.0), [-24.6, 0.0, 52.0, 68.0][number % 4]);
         let start = mjd(61_110.0 + 1.9 * number as f64);
         let closest = tdb(start).plus_seconds(random.between(0.2, 1.8) * 86_400.0);
-        let away = unit(random.direction());
+        let away = unit(random_direction(&mut random));
         let speed_au_d = random.between(5.0, 20.0) * 86_400.0 / 149_597_870.7;
-        let velocity = scale(speed_au_d, unit(cross(away, random.direction())));
+        let velocity = scale(speed_au_d, unit(cross(away, random_direction(&mut random))));
         let distance_au = [0.01, 0.006][number % 2];
         let mut orbits = Orbits::new();
         push(&mut orbits, passing(&setting.ephemeris, closest, scale(distance_au, away), velocity), closest);

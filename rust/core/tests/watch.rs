@@ -1,5 +1,8 @@
 //! A watch against the windows and the places that it must agree with to the bit.
 
+mod common;
+
+use common::Random;
 use hourarc_core::astrometry::{Catalog, CatalogColumns, Observer, Targets};
 use hourarc_core::constants::RADIANS_PER_DEGREE;
 use hourarc_core::earth::Orientation;
@@ -18,15 +21,6 @@ use hourarc_core::windows::{Cause, Column, Limits, SkyModel};
 
 const MJD: i64 = 61_109;
 const ROWS: usize = 3_000;
-
-struct Random(u64);
-
-impl Random {
-    fn between(&mut self, low: f64, high: f64) -> f64 {
-        self.0 = self.0.wrapping_mul(6364136223846793005).wrapping_add(1442695040888963407);
-        low + (high - low) * ((self.0 >> 11) as f64 / (1u64 << 53) as f64)
-    }
-}
 
 /// Stars over the sky, every hundredth row a bad one.
 fn catalog(random: &mut Random) -> Catalog {

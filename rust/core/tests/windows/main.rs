@@ -2,8 +2,11 @@
 
 mod brute;
 mod cases;
+#[path = "../common/mod.rs"]
+mod common;
 mod sure;
 
+use common::Random;
 use hourarc_core::astrometry::{
     Catalog, CatalogColumns, Observer, Sky, Targets, Track, body_direction, star_direction,
 };
@@ -24,19 +27,7 @@ use hourarc_core::windows::{
 };
 use std::f64::consts::PI;
 
-/// A linear congruential generator (Knuth's MMIX constants), uniform in 0 to 1.
-struct Random(u64);
-
 impl Random {
-    fn unit(&mut self) -> f64 {
-        self.0 = self.0.wrapping_mul(6364136223846793005).wrapping_add(1442695040888963407);
-        (self.0 >> 11) as f64 / (1u64 << 53) as f64
-    }
-
-    fn between(&mut self, low: f64, high: f64) -> f64 {
-        low + (high - low) * self.unit()
-    }
-
     fn degrees(&mut self, low: f64, high: f64) -> f64 {
         self.between(low, high) * RADIANS_PER_DEGREE
     }
