@@ -7,5 +7,4 @@ pub mod elementary;
 mod elementary_coefficients;
 pub mod roots;
 pub mod sphere;
-pub mod spline;
 pub mod vector;
