@@ -4,7 +4,7 @@ Angles are degrees and names end in their unit. Times are UTC: numpy datetime64,
 astropy Times; results are datetime64[ns]. Results are small frozen objects with plain numpy columns.
 
     import hourarc as ha
-    site = ha.Site(-70.4, -24.6, 2635.0, name="Saltpan Ridge")
+    site = ha.Site(24.5127, -20.8714, 1148.0, name="Saltpan Ridge")
     stars = ha.Catalog([83.8, 201.3], [-5.4, -43.0])
     found = ha.windows(site, stars, "2026-03-10T16:00", "2026-03-11T16:00", ha.Limits(airmass_max=1.8))
 

@@ -16,7 +16,11 @@ use hourarc_core::refraction::{AirmassModel, Atmosphere, Refraction};
 use hourarc_core::site::Site;
 use hourarc_core::time::{LeapSeconds, Utc};
 use hourarc_core::windows::{Column, Limits, SkyModel};
-use std::time::Instant;
+
+#[path = "common/clock.rs"]
+mod clock;
+
+use clock::best;
 
 fn orbits(rows: usize) -> Orbits {
     let mut state = 5u64;
@@ -32,16 +36,6 @@ fn orbits(rows: usize) -> Orbits {
         orbits.push(elements, Brightness::Hg { h: 18.0, g: 0.15 });
     }
     orbits
-}
-
-/// Seconds of the best of five runs.
-fn best(mut run: impl FnMut()) -> f64 {
-    let mut time = || {
-        let begun = Instant::now();
-        run();
-        begun.elapsed().as_secs_f64()
-    };
-    (0..5).map(|_| time()).fold(f64::INFINITY, f64::min)
 }
 
 fn main() {

@@ -2,7 +2,7 @@
 //!
 //! `cargo run --release -p hourarc-core --example throughput [rows]`
 
-use hourarc_core::astrometry::{Catalog, CatalogColumns, Observer, Targets};
+use hourarc_core::astrometry::{Observer, Targets};
 use hourarc_core::constants::RADIANS_PER_DEGREE;
 use hourarc_core::earth::Orientation;
 use hourarc_core::ephemeris::Ephemeris;
@@ -15,44 +15,14 @@ use hourarc_core::refraction::{AirmassModel, Atmosphere, Refraction};
 use hourarc_core::site::Site;
 use hourarc_core::time::{LeapSeconds, Utc};
 use hourarc_core::windows::{Column, Limits, SkyModel};
-use std::time::Instant;
 
-struct Random(u64);
+#[path = "common/clock.rs"]
+mod clock;
+#[path = "common/stars.rs"]
+mod stars;
 
-impl Random {
-    fn unit(&mut self) -> f64 {
-        self.0 = self.0.wrapping_mul(6364136223846793005).wrapping_add(1442695040888963407);
-        (self.0 >> 11) as f64 / (1u64 << 53) as f64
-    }
-}
-
-fn catalog(rows: usize) -> Catalog {
-    let mut random = Random(5);
-    let mut column =
-        |low: f64, high: f64| -> Vec<f64> { (0..rows).map(|_| low + (high - low) * random.unit()).collect() };
-    let sin_dec = column(-1.0, 1.0);
-    Catalog::new(&CatalogColumns {
-        ra_deg: &column(0.0, 360.0),
-        dec_deg: &sin_dec.iter().map(|s| s.asin() / RADIANS_PER_DEGREE).collect::<Vec<_>>(),
-        epoch_yr: &vec![2016.0; rows],
-        pm_ra_mas_yr: &column(-50.0, 50.0),
-        pm_dec_mas_yr: &column(-50.0, 50.0),
-        parallax_mas: &column(0.0, 10.0),
-        radial_velocity_km_s: &vec![0.0; rows],
-    })
-    .expect("columns of one length")
-}
-
-/// Seconds of the best of five runs.
-fn best(mut run: impl FnMut()) -> f64 {
-    (0..5)
-        .map(|_| {
-            let begun = Instant::now();
-            run();
-            begun.elapsed().as_secs_f64()
-        })
-        .fold(f64::INFINITY, f64::min)
-}
+use clock::best;
+use stars::catalog;
 
 fn main() {
     let rows = std::env::args().nth(1).and_then(|word| word.parse().ok()).unwrap_or(100_000);
